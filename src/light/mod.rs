@@ -1,0 +1,3 @@
+//! Cherenkov light: yield, emission angle, ground density, arrival.
+
+pub mod cherenkov;

@@ -1,0 +1,3 @@
+//! The `nightpool` command.
+
+fn main() {}

@@ -1,0 +1,8 @@
+//! Mathematics without physics: keyed random streams, interpolation, quadrature, roots.
+
+pub mod interpolation;
+pub mod quadrature;
+pub mod stream;
+
+pub use interpolation::UniformTable;
+pub use stream::Stream;

@@ -1,0 +1,9 @@
+//! Checks against mathematics: limits, conservation, convergence, two methods. A module a layer.
+
+mod atmosphere;
+mod cascade;
+mod command;
+mod hadronic;
+mod layout;
+mod light;
+mod telescope;
