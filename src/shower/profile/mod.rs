@@ -1,1 +1,11 @@
-//! To be filled by its stage.
+//! The fast engine's showers: longitudinal development, and the states of the light emitters.
+//!
+//! A shower is a line in depth, `longitudinal`, times the distribution of the charged particles
+//! that emit light at each age, `emitters`, which is universal to a few percent.
+
+pub mod emitters;
+pub mod hillas;
+pub mod longitudinal;
+
+pub use emitters::{Emitter, EmitterNode, EmitterTable};
+pub use longitudinal::{Development, GaisserHillas};
