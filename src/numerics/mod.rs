@@ -5,4 +5,4 @@ pub mod quadrature;
 pub mod stream;
 
 pub use interpolation::UniformTable;
-pub use stream::Stream;
+pub use stream::{Stage, Stream};
