@@ -1,0 +1,253 @@
+//! The plain result of a plan: numbers with their errors and units, no behaviour.
+
+/// Everything the writers need.
+#[derive(Clone, Debug, Default, PartialEq)]
+pub struct PlanResult {
+    /// Where the numbers come from.
+    pub provenance: Provenance,
+    /// The site, as planned for.
+    pub site: SiteSummary,
+    /// Layouts, best first.
+    pub ranking: Vec<LayoutRow>,
+    /// Trigger-level effective areas by layout, primary and energy bin.
+    pub effective_areas: Vec<AreaRow>,
+    /// Differential trigger rates by layout, primary and energy bin.
+    pub differential_rates: Vec<RateRow>,
+    /// Cherenkov light on the ground.
+    pub light_pool: Vec<PoolRow>,
+    /// Night sky and thresholds by telescope kind.
+    pub kinds: Vec<KindRow>,
+    /// Where the telescopes of each layout stand.
+    pub maps: Vec<LayoutMap>,
+    /// Counts of out-of-table look-ups and other things that must never be silent.
+    pub counters: Vec<Counter>,
+    /// What the reader must know before using the numbers.
+    pub warnings: Vec<String>,
+    /// What is approximate and by how much.
+    pub approximations: Vec<Approximation>,
+}
+
+/// Where the numbers of a run come from.
+#[derive(Clone, Debug, Default, PartialEq)]
+pub struct Provenance {
+    /// Name of the study.
+    pub study: String,
+    /// Title of the study.
+    pub title: String,
+    /// SHA-256 of the study file and of the files it names, in hexadecimal.
+    pub study_checksum: String,
+    /// Version of this program.
+    pub version: String,
+    /// Seed of the random streams.
+    pub seed: u64,
+    /// Light engine: `profile` or `cascade`.
+    pub engine: String,
+    /// Column the layouts are ordered by.
+    pub score: String,
+    /// Number of bootstrap resamples behind tiers and probabilities.
+    pub resamples: usize,
+    /// Simulated showers and array events by primary: (primary, showers, array events).
+    pub simulated: Vec<(String, u64, u64)>,
+    /// The published models this run used.
+    pub models: Vec<Model>,
+}
+
+/// A published model that a run used.
+#[derive(Clone, Debug, Default, PartialEq)]
+pub struct Model {
+    /// What it was used for.
+    pub purpose: String,
+    /// Author, year, journal, page.
+    pub citation: String,
+}
+
+/// The site in numbers.
+#[derive(Clone, Debug, Default, PartialEq)]
+pub struct SiteSummary {
+    /// Its name.
+    pub name: String,
+    /// Geodetic latitude, degrees north.
+    pub latitude_deg: f64,
+    /// Longitude, degrees east.
+    pub longitude_deg: f64,
+    /// Altitude above the sea, m.
+    pub altitude_m: f64,
+    /// Vertical depth of air above it, g/cm2.
+    pub depth_g_cm2: f64,
+    /// Pointing: zenith angle, degrees.
+    pub zenith_deg: f64,
+    /// Pointing: azimuth from north through east, degrees.
+    pub azimuth_deg: f64,
+    /// Boundary polygon, east and north in metres; empty if none.
+    pub boundary_enu_m: Vec<[f64; 2]>,
+    /// Excluded polygons, east and north in metres.
+    pub exclusions_enu_m: Vec<Vec<[f64; 2]>>,
+    /// Control house, east and north in metres.
+    pub control_house_enu_m: Option<[f64; 2]>,
+}
+
+/// One layout of the ranking. A rate that was not computed is NaN and is shown as a dash.
+#[derive(Clone, Debug, Default, PartialEq)]
+pub struct LayoutRow {
+    /// Place in the order, from 1.
+    pub rank: usize,
+    /// Group that the errors cannot tell apart, from 1.
+    pub tier: usize,
+    /// Its name.
+    pub layout: String,
+    /// Number of telescopes.
+    pub telescopes: usize,
+    /// Telescopes by kind: `4 x broad`.
+    pub kinds: String,
+    /// Telescopes that must fire.
+    pub condition: usize,
+    /// Sum of mirror areas, m2.
+    pub mirror_area_m2: f64,
+    /// Rate of the reference source, Hz.
+    pub gamma_rate_hz: f64,
+    /// Its standard error, Hz.
+    pub gamma_rate_error_hz: f64,
+    /// Rate of all backgrounds over the full cone, Hz.
+    pub background_rate_hz: f64,
+    /// Its standard error, Hz.
+    pub background_rate_error_hz: f64,
+    /// Peak of the differential gamma trigger rate, GeV.
+    pub threshold_gev: f64,
+    /// Its standard error, GeV.
+    pub threshold_error_gev: f64,
+    /// Rate of chance coincidences of the night sky, Hz.
+    pub accidental_rate_hz: f64,
+    /// Cost in the study's unit.
+    pub cost: f64,
+    /// Probability that this layout is truly ahead of the next, from paired resampling.
+    pub order_probability: f64,
+    /// Score, in the unit of the score's column.
+    pub score: f64,
+    /// Its standard error.
+    pub score_error: f64,
+}
+
+/// An effective area in one bin of true energy.
+#[derive(Clone, Debug, Default, PartialEq)]
+pub struct AreaRow {
+    /// Layout.
+    pub layout: String,
+    /// Primary.
+    pub primary: String,
+    /// Lower edge, GeV.
+    pub energy_low_gev: f64,
+    /// Upper edge, GeV.
+    pub energy_high_gev: f64,
+    /// Effective area, m2 (for a background over a cone: the acceptance divided by the cone's
+    /// solid angle).
+    pub area_m2: f64,
+    /// Its standard error, m2.
+    pub error_m2: f64,
+}
+
+/// A differential trigger rate in one bin of true energy.
+#[derive(Clone, Debug, Default, PartialEq)]
+pub struct RateRow {
+    /// Layout.
+    pub layout: String,
+    /// Primary or source.
+    pub primary: String,
+    /// Lower edge, GeV.
+    pub energy_low_gev: f64,
+    /// Upper edge, GeV.
+    pub energy_high_gev: f64,
+    /// Rate per unit energy, Hz/GeV.
+    pub rate_hz_gev: f64,
+    /// Its standard error, Hz/GeV.
+    pub error_hz_gev: f64,
+}
+
+/// Mean Cherenkov light at one distance from the shower axis.
+#[derive(Clone, Debug, Default, PartialEq)]
+pub struct PoolRow {
+    /// Primary.
+    pub primary: String,
+    /// Its energy, GeV.
+    pub energy_gev: f64,
+    /// Distance from the axis in the plane across it, m.
+    pub distance_m: f64,
+    /// Photons per square metre in the stated band.
+    pub photons_m2: f64,
+    /// Standard error of the mean, photons per square metre.
+    pub error_m2: f64,
+    /// Shower-to-shower standard deviation, photons per square metre.
+    pub spread_m2: f64,
+    /// Telescope kind whose photoelectrons are given beside; empty if none.
+    pub kind: String,
+    /// Mean photoelectrons in that kind's camera.
+    pub photoelectrons: f64,
+}
+
+/// A telescope kind under this sky.
+#[derive(Clone, Debug, Default, PartialEq)]
+pub struct KindRow {
+    /// Its name.
+    pub kind: String,
+    /// Mirror area left after obscuration, m2.
+    pub mirror_area_m2: f64,
+    /// Number of pixels.
+    pub pixels: usize,
+    /// Pixel pitch on the sky, degrees.
+    pub pixel_pitch_deg: f64,
+    /// Field of view, full angle, degrees.
+    pub field_of_view_deg: f64,
+    /// Night-sky photoelectrons per pixel and nanosecond.
+    pub sky_pe_per_ns: f64,
+    /// Pixel threshold, photoelectrons.
+    pub threshold_pe: f64,
+    /// How the threshold came about: `fixed` or `lowest quiet`.
+    pub threshold_choice: String,
+    /// Trigger of the night sky alone in one telescope, Hz.
+    pub accidental_rate_hz: f64,
+    /// Trigger topology in words.
+    pub topology: String,
+}
+
+/// The positions of a layout.
+#[derive(Clone, Debug, Default, PartialEq)]
+pub struct LayoutMap {
+    /// Layout.
+    pub layout: String,
+    /// Its telescopes.
+    pub telescopes: Vec<PlacedTelescope>,
+}
+
+/// One telescope of a layout.
+#[derive(Clone, Debug, Default, PartialEq)]
+pub struct PlacedTelescope {
+    /// Kind.
+    pub kind: String,
+    /// Mirror area, m2.
+    pub mirror_area_m2: f64,
+    /// East, m.
+    pub east_m: f64,
+    /// North, m.
+    pub north_m: f64,
+    /// Up, m.
+    pub up_m: f64,
+}
+
+/// A counted event that a reader should know of.
+#[derive(Clone, Debug, Default, PartialEq)]
+pub struct Counter {
+    /// What is counted.
+    pub name: String,
+    /// How often it happened.
+    pub count: u64,
+    /// Out of how many.
+    pub of: u64,
+}
+
+/// An approximation and its size.
+#[derive(Clone, Debug, Default, PartialEq)]
+pub struct Approximation {
+    /// What is approximate.
+    pub what: String,
+    /// By how much, and how that is known.
+    pub size: String,
+}

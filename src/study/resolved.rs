@@ -1,0 +1,330 @@
+//! The study, resolved: every default filled in, every number in range, units in the names.
+
+use std::path::PathBuf;
+
+use crate::shower::Species;
+
+/// A whole study.
+#[derive(Clone, Debug)]
+pub struct Study {
+    /// Short name, also the default name of the report's folder.
+    pub name: String,
+    /// One line for the reader.
+    pub title: String,
+    /// The file it was read from.
+    pub path: PathBuf,
+    /// SHA-256 of the file and of the files it names, hexadecimal.
+    pub checksum: String,
+    /// Seed of all random streams.
+    pub seed: u64,
+    /// Which light engine.
+    pub engine: Engine,
+    /// The place.
+    pub site: Site,
+    /// The air above it.
+    pub air: Air,
+    /// The sky's light.
+    pub night_sky: NightSky,
+    /// Telescope kinds.
+    pub kinds: Vec<Kind>,
+    /// Candidate layouts, explicit and generated, in the order of the file.
+    pub layouts: Vec<Layout>,
+    /// Where the telescopes look.
+    pub pointing: Pointing,
+    /// Gamma-ray sources; the first is the reference.
+    pub sources: Vec<Source>,
+    /// Background species.
+    pub backgrounds: Vec<Background>,
+    /// How much to simulate.
+    pub budget: Budget,
+    /// How to rank.
+    pub ranking: Ranking,
+}
+
+/// The light engine.
+#[derive(Clone, Copy, Debug, PartialEq, Eq)]
+pub enum Engine {
+    /// The fast one: longitudinal profiles and tables.
+    Profile,
+    /// The reference: particle by particle.
+    Cascade,
+}
+
+impl Engine {
+    /// Its name in the study file.
+    pub fn name(self) -> &'static str {
+        match self {
+            Self::Profile => "profile",
+            Self::Cascade => "cascade",
+        }
+    }
+}
+
+/// The place.
+#[derive(Clone, Debug, PartialEq)]
+pub struct Site {
+    /// Its name.
+    pub name: String,
+    /// Geodetic latitude, degrees north.
+    pub latitude_deg: f64,
+    /// Longitude, degrees east.
+    pub longitude_deg: f64,
+    /// Altitude of the reference point above the sea, m.
+    pub altitude_m: f64,
+    /// Magnetic field, east, north and up, microtesla; absent if the study leaves it off.
+    pub field_ut: Option<[f64; 3]>,
+    /// Boundary polygon, east and north in metres; empty if none.
+    pub boundary_enu_m: Vec<[f64; 2]>,
+    /// Excluded ground.
+    pub exclusions: Vec<Exclusion>,
+    /// Control house, east and north in metres.
+    pub control_house_enu_m: Option<[f64; 2]>,
+}
+
+/// Ground where no telescope may stand.
+#[derive(Clone, Debug, PartialEq)]
+pub struct Exclusion {
+    /// Why.
+    pub name: String,
+    /// Polygon, east and north in metres.
+    pub outline_enu_m: Vec<[f64; 2]>,
+}
+
+/// Where the air's profile comes from.
+#[derive(Clone, Debug, PartialEq)]
+pub enum AirProfile {
+    /// A profile known by name.
+    Named(String),
+    /// A table in a file.
+    File(PathBuf),
+}
+
+/// The air above the site.
+#[derive(Clone, Debug, PartialEq)]
+pub struct Air {
+    /// Temperature and pressure by altitude.
+    pub profile: AirProfile,
+    /// Vertical aerosol optical depth at 550 nm above the site.
+    pub aerosol_depth_550nm: f64,
+    /// Angstrom exponent of the aerosol.
+    pub angstrom_exponent: f64,
+    /// Scale height of the aerosol above the site, m.
+    pub aerosol_scale_height_m: f64,
+    /// Whether molecules scatter.
+    pub molecular: bool,
+    /// Whether aerosol attenuates.
+    pub aerosol: bool,
+    /// Whether ozone absorbs.
+    pub ozone: bool,
+}
+
+/// How bright the sky is.
+#[derive(Clone, Copy, Debug, PartialEq)]
+pub enum SkyBrightness {
+    /// V magnitudes per square arcsecond.
+    VMagArcsec2(f64),
+    /// Photons per square metre, second and steradian from 300 to 650 nm.
+    PhotonsM2SSr(f64),
+}
+
+/// The night sky.
+#[derive(Clone, Copy, Debug, PartialEq)]
+pub struct NightSky {
+    /// Its brightness.
+    pub brightness: SkyBrightness,
+    /// Factor for the field (galactic plane above 1).
+    pub field_factor: f64,
+    /// Factor for moonlight.
+    pub moonlight_factor: f64,
+}
+
+/// Shape of a pixel.
+#[derive(Clone, Copy, Debug, PartialEq, Eq)]
+pub enum PixelShape {
+    /// Hexagons, triangular grid.
+    Hexagonal,
+    /// Squares, square grid.
+    Square,
+}
+
+/// The light sensor.
+#[derive(Clone, Debug, PartialEq)]
+pub enum Sensor {
+    /// A table known by name.
+    Named(String),
+    /// A table in a file: wavelength, efficiency.
+    File(PathBuf),
+}
+
+/// Which pixels must fire together.
+#[derive(Clone, Copy, Debug, PartialEq, Eq)]
+pub enum Topology {
+    /// `pixels` connected neighbours in any shape.
+    Neighbours {
+        /// How many.
+        pixels: usize,
+    },
+    /// `pixels` neighbours, each touching all the others where the grid allows it.
+    Compact {
+        /// How many.
+        pixels: usize,
+    },
+    /// Any `pixels` of the camera.
+    Majority {
+        /// How many.
+        pixels: usize,
+    },
+    /// A clipped sum over a patch.
+    PatchSum,
+}
+
+/// How a pixel threshold is set.
+#[derive(Clone, Copy, Debug, PartialEq)]
+pub enum Threshold {
+    /// Given, photoelectrons.
+    Fixed {
+        /// Photoelectrons.
+        pe: f64,
+    },
+    /// The lowest at which the array's chance coincidences stay below a rate.
+    LowestQuiet {
+        /// Allowed chance rate of the array, Hz.
+        accidental_rate_hz: f64,
+    },
+}
+
+/// A telescope kind.
+#[derive(Clone, Debug, PartialEq)]
+pub struct Kind {
+    /// Its name.
+    pub name: String,
+    /// Mirror area before obscuration, m2.
+    pub mirror_area_m2: f64,
+    /// Share of it in shadow.
+    pub obscuration: f64,
+    /// Mirror reflectivity: peak value of the published curve's shape.
+    pub reflectivity: f64,
+    /// Standard deviation of the point spread in one coordinate, degrees.
+    pub point_spread_deg: f64,
+    /// Pixel shape.
+    pub pixel_shape: PixelShape,
+    /// Distance between pixel centres, degrees.
+    pub pixel_pitch_deg: f64,
+    /// Diameter of the round field of view, degrees.
+    pub field_of_view_deg: f64,
+    /// Light-guide transmission.
+    pub light_guide: f64,
+    /// Sensor.
+    pub sensor: Sensor,
+    /// Relative standard deviation of the single-photoelectron pulse height.
+    pub single_pe_spread: f64,
+    /// Full width at half maximum of a pulse, ns.
+    pub pulse_width_ns: f64,
+    /// Coincidence gate of the pixels, ns.
+    pub gate_ns: f64,
+    /// Trigger topology.
+    pub topology: Topology,
+    /// Pixel threshold.
+    pub threshold: Threshold,
+    /// Cost of one telescope, in the study's unit.
+    pub cost: Option<f64>,
+}
+
+/// A telescope at its place.
+#[derive(Clone, Debug, PartialEq)]
+pub struct Placed {
+    /// Index into [`Study::kinds`].
+    pub kind: usize,
+    /// East, north, up, m.
+    pub enu_m: [f64; 3],
+}
+
+/// A candidate layout.
+#[derive(Clone, Debug, PartialEq)]
+pub struct Layout {
+    /// Its name.
+    pub name: String,
+    /// Its telescopes.
+    pub telescopes: Vec<Placed>,
+    /// How many must fire.
+    pub condition: usize,
+    /// Coincidence window of the array, ns.
+    pub window_ns: f64,
+    /// Line of the study file that it comes from.
+    pub line: usize,
+}
+
+/// Where the telescopes look.
+#[derive(Clone, Copy, Debug, PartialEq)]
+pub struct Pointing {
+    /// Zenith angle, degrees.
+    pub zenith_deg: f64,
+    /// Azimuth from north through east, degrees.
+    pub azimuth_deg: f64,
+    /// Half-angle of the cone that backgrounds come from, degrees; absent: field of view + 3.
+    pub cone_half_angle_deg: Option<f64>,
+}
+
+/// A spectrum.
+#[derive(Clone, Debug, PartialEq)]
+pub enum Spectrum {
+    /// A published one, by name.
+    Named(String),
+    /// flux (E / pivot)^-index exp(-E / cutoff), in 1/(m2 s TeV), and per steradian if diffuse.
+    PowerLaw {
+        /// Flux at the pivot.
+        flux_m2_s_tev: f64,
+        /// Pivot, TeV.
+        pivot_tev: f64,
+        /// Index, positive.
+        index: f64,
+        /// Exponential cut-off, TeV.
+        cutoff_tev: Option<f64>,
+    },
+}
+
+/// A gamma-ray source.
+#[derive(Clone, Debug, PartialEq)]
+pub struct Source {
+    /// Its name.
+    pub name: String,
+    /// Its spectrum.
+    pub spectrum: Spectrum,
+}
+
+/// A background species.
+#[derive(Clone, Debug, PartialEq)]
+pub struct Background {
+    /// Primary.
+    pub species: Species,
+    /// Its spectrum.
+    pub spectrum: Spectrum,
+}
+
+/// How much to simulate.
+#[derive(Clone, Copy, Debug, PartialEq)]
+pub struct Budget {
+    /// Gamma showers.
+    pub gamma_showers: u64,
+    /// Showers of each background.
+    pub background_showers: u64,
+    /// Core positions of each shower, a multiple of 64.
+    pub cores_per_shower: u64,
+    /// Gamma energies, GeV.
+    pub gamma_energy_gev: [f64; 2],
+    /// Background energies, GeV.
+    pub background_energy_gev: [f64; 2],
+    /// Wanted relative error of the leading layout's background rate.
+    pub background_rate_error: f64,
+    /// Largest distance of a core from the array's centre, m; absent: from the light pool.
+    pub impact_radius_m: Option<f64>,
+}
+
+/// How to rank.
+#[derive(Clone, Debug, PartialEq)]
+pub struct Ranking {
+    /// Column to order by.
+    pub score: String,
+    /// Bootstrap resamples.
+    pub resamples: usize,
+}
