@@ -45,7 +45,7 @@ pub fn mean_scaled_angle(energy_mev: f64, age: f64) -> f64 {
 }
 
 /// Draws u = w / mean(w): z = sqrt(u) falls as exp(-(z - 0.59) / lambda), lambda 0.478 below and
-/// 0.380 above z = 0.59 (0.413 and 0.380 above 350 MeV), rescaled to unit mean of u.
+/// 0.380 above z = 0.59 (0.413 and 0.380 above 350 MeV). As published, the mean of u is 0.91 (0.89).
 ///
 /// # Source
 /// Hillas 1982, J. Phys. G 8, 1461 (from memory).
