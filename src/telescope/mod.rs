@@ -1,1 +1,20 @@
-//! To be filled by its stage.
+//! The telescope: mirror, camera, sensor, night-sky noise and trigger.
+//!
+//! A threshold in photoelectrons is in units of the mean pulse height of one photoelectron after
+//! shaping, above the mean (AC-coupled) baseline of the sky noise. "Connected" means any connected
+//! shape of pixels that share an edge.
+
+pub mod accidental;
+pub mod camera;
+pub mod curve;
+pub mod kind;
+pub mod readout;
+pub mod sky;
+pub mod summary;
+
+pub use camera::{Camera, PixelShape};
+pub use curve::{Curve, CurveError};
+pub use kind::{KindError, TelescopeKind, Threshold};
+pub use readout::{ImageRecord, Quantum, Readout};
+pub use sky::{Brightness, NightSky};
+pub use summary::ImageSummary;
