@@ -113,6 +113,19 @@ pub struct AxisPath {
     pub steps: Vec<AxisStep>,
 }
 
+impl AxisPath {
+    /// Slant depth at a distance from the observer, by interpolation of its logarithm between the
+    /// middles of slabs.
+    pub fn depth_at_g_cm2(&self, distance_m: f64) -> f64 {
+        let below = self.steps.partition_point(|step| step.distance_m > distance_m);
+        let upper = below.clamp(1, self.steps.len() - 1);
+        let (far, near) = (&self.steps[upper - 1], &self.steps[upper]);
+        let share = (far.distance_m - distance_m) / (far.distance_m - near.distance_m);
+        let (low, high) = (far.depth_g_cm2.ln(), near.depth_g_cm2.ln());
+        (low + share * (high - low)).exp()
+    }
+}
+
 /// The part of an axis inside one slab.
 #[derive(Clone, Copy, Debug)]
 pub struct AxisStep {

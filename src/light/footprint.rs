@@ -97,6 +97,11 @@ impl LightModel {
         Self { column, reference, sectors, fractions, ages, nodes, worth }
     }
 
+    /// Whether the tables depend on the azimuth about the axis.
+    pub fn has_field(&self) -> bool {
+        self.sectors > 1
+    }
+
     /// Number of detectors.
     pub fn detectors(&self) -> usize {
         self.worth.len()
