@@ -1,0 +1,159 @@
+//! What stands on the ground, and the images it sees of one word.
+
+use nalgebra::Vector3;
+
+use crate::light::{LightModel, ShowerLight, View};
+use crate::numerics::{Stage, Stream};
+use crate::shower::{Direction, Primary};
+use crate::telescope::{Quantum, Readout, TelescopeKind};
+use crate::units::degrees;
+
+use super::margin::{Code, code};
+use super::sample::Word;
+use super::throw::{Throw, species_key};
+use super::{CORES_PER_SHOWER, EVENTS_PER_WORD};
+
+/// A telescope kind on a pad.
+#[derive(Clone, Debug, PartialEq)]
+pub struct Column {
+    /// Position in the ground frame, m.
+    pub position_m: [f64; 3],
+    /// Index of its kind.
+    pub kind: usize,
+}
+
+impl Column {
+    /// Words that name it in the keys of random streams: position in millimetres and kind.
+    fn key(&self) -> [u64; 4] {
+        let mm = |metres: f64| (metres * 1e3).round() as i64 as u64;
+        let [x, y, z] = self.position_m;
+        [mm(x), mm(y), mm(z), self.kind as u64]
+    }
+}
+
+/// Images with fewer expected photoelectrons than this are not made: they cannot trigger a group
+/// of pixels at any threshold used.
+pub const LEAST_PHOTOELECTRONS: f64 = 3.0;
+/// Photoelectrons drawn one by one; brighter images use that many with a larger weight, which adds
+/// 1.6 % to the noise of an image far above any threshold.
+pub const MOST_PHOTOELECTRONS: f64 = 4_000.0;
+
+/// Everything needed to make the images of a shower.
+pub struct Scene<'a> {
+    /// Seed of the study.
+    pub seed: u64,
+    /// Telescope kinds, in the order of the light model's detectors.
+    pub kinds: &'a [TelescopeKind],
+    /// Sky photoelectrons per ns and pixel of each kind.
+    pub sky_per_ns: Vec<f64>,
+    /// Light tables.
+    pub light: &'a LightModel,
+    /// Where the telescopes look.
+    pub pointing: Direction,
+    /// Magnetic field, east, north, up, uT.
+    pub field_ut: Vector3<f64>,
+    /// The telescopes.
+    pub columns: Vec<Column>,
+    /// Factor on all light: mirrors, air, sensors.
+    pub light_scale: f64,
+    /// Makes the electromagnetic parts of a shower.
+    pub parts: &'a PartMaker<'a>,
+}
+
+/// Makes the electromagnetic parts of a shower along its axis.
+pub type PartMaker<'a> =
+    dyn Fn(&Primary, &LightModel, &mut Stream) -> Vec<crate::light::Part> + Sync + 'a;
+
+/// Working space of one thread.
+pub struct Bench<'a> {
+    readouts: Vec<Readout<'a>>,
+    view: View,
+    quanta: Vec<Quantum>,
+    sums: Vec<f64>,
+}
+
+impl<'a> Scene<'a> {
+    /// Working space for one thread.
+    pub fn bench(&self) -> Bench<'a> {
+        let readouts = self.kinds.iter().zip(&self.sky_per_ns);
+        Bench {
+            readouts: readouts.map(|(kind, &sky)| Readout::new(kind, sky)).collect(),
+            view: View::default(),
+            quanta: Vec::new(),
+            sums: Vec::new(),
+        }
+    }
+
+    /// Simulates one word: margin codes by column, 64 events each.
+    pub fn word(&self, throw: &Throw, number: usize, bench: &mut Bench<'_>) -> (Word, Vec<Code>) {
+        let thrown = throw.word(number);
+        let mut codes = vec![0; self.columns.len() * EVENTS_PER_WORD];
+        let mut angle_rad: f64 = 0.0;
+        let towards = self.pointing.to_source();
+        for (place, (primary, cores)) in thrown.showers.iter().enumerate() {
+            let cosine = primary.direction.to_source().dot(&towards);
+            angle_rad = angle_rad.max(cosine.clamp(-1.0, 1.0).acos());
+            let key = [species_key(primary.species), number as u64, place as u64];
+            let mut stream = Stream::keyed(self.seed, Stage::Shower, &key);
+            let parts = (self.parts)(primary, self.light, &mut stream);
+            if parts.is_empty() {
+                continue;
+            }
+            let light = ShowerLight::new(self.light, primary.direction, self.field_ut, parts);
+            for (at, core) in cores.iter().enumerate() {
+                let event = place * CORES_PER_SHOWER + at;
+                for (index, column) in self.columns.iter().enumerate() {
+                    let margin = self.margin(&light, core, column, (&key, at), bench);
+                    codes[index * EVENTS_PER_WORD + event] = code(f64::from(margin));
+                }
+            }
+        }
+        let (energy_gev, exposure, ring) = (thrown.energy_gev, thrown.exposure, thrown.ring);
+        (Word { energy_gev, exposure, ring, angle_rad }, codes)
+    }
+
+    fn margin(
+        &self,
+        light: &ShowerLight<'_>,
+        core: &Vector3<f64>,
+        column: &Column,
+        (shower, core_number): (&[u64; 3], usize),
+        bench: &mut Bench<'_>,
+    ) -> f32 {
+        let pad = Vector3::from(column.position_m) - core;
+        light.view(column.kind, &pad, &mut bench.view);
+        let area = self.kinds[column.kind].collecting_area_m2() * self.light_scale;
+        let expected = bench.view.density_m2 * area;
+        if expected < LEAST_PHOTOELECTRONS {
+            return 0.0;
+        }
+        let weight = (expected / MOST_PHOTOELECTRONS).max(1.0);
+        let [x, y, z, kind] = column.key();
+        let key = [shower[0], shower[1], shower[2], core_number as u64, x, y, z, kind];
+        let mut stream = Stream::keyed(self.seed, Stage::Image, &key);
+        let (right, up) = self.pointing.transverse();
+        let forward = self.pointing.to_source();
+        let quanta = &mut bench.quanta;
+        quanta.clear();
+        let scale = area / weight;
+        light.photoelectrons(
+            column.kind,
+            &bench.view,
+            scale,
+            &mut stream,
+            &mut bench.sums,
+            |photoelectron| {
+                let from = photoelectron.to_source;
+                let depth = from.dot(&forward);
+                quanta.push(Quantum {
+                    x_deg: degrees(from.dot(&right) / depth) as f32,
+                    y_deg: degrees(from.dot(&up) / depth) as f32,
+                    time_ns: photoelectron.time_ns as f32,
+                    weight: weight as f32,
+                });
+            },
+        );
+        let record = bench.readouts[column.kind].image(&bench.quanta, &mut stream);
+        record.map_or(0.0, |record| record.margin_pe)
+    }
+}
