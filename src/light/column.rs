@@ -114,15 +114,14 @@ pub struct AxisPath {
 }
 
 impl AxisPath {
-    /// Slant depth at a distance from the observer, by interpolation of its logarithm between the
-    /// middles of slabs.
-    pub fn depth_at_g_cm2(&self, distance_m: f64) -> f64 {
-        let below = self.steps.partition_point(|step| step.distance_m > distance_m);
+    /// Distance from the observer of a slant depth, by interpolation between the middles of slabs.
+    pub fn distance_at_m(&self, depth_g_cm2: f64) -> f64 {
+        let below = self.steps.partition_point(|step| step.depth_g_cm2 < depth_g_cm2);
         let upper = below.clamp(1, self.steps.len() - 1);
-        let (far, near) = (&self.steps[upper - 1], &self.steps[upper]);
-        let share = (far.distance_m - distance_m) / (far.distance_m - near.distance_m);
-        let (low, high) = (far.depth_g_cm2.ln(), near.depth_g_cm2.ln());
-        (low + share * (high - low)).exp()
+        let (high, low) = (&self.steps[upper - 1], &self.steps[upper]);
+        let share = (depth_g_cm2.max(1e-3) / high.depth_g_cm2).ln()
+            / (low.depth_g_cm2 / high.depth_g_cm2).ln();
+        (high.distance_m + share * (low.distance_m - high.distance_m)).max(0.0)
     }
 }
 
