@@ -12,6 +12,7 @@ pub mod consts;
 pub mod layout;
 pub mod light;
 pub mod numerics;
+pub mod plan;
 pub mod rates;
 pub mod report;
 pub mod response;

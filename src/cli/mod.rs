@@ -1,1 +1,45 @@
-//! To be filled by its stage.
+//! The command line: arguments to a study to a run; the only place that prints or exits.
+//!
+//! A subcommand is a file with an argument struct and a `run` that gives `Result<(), Failure>`.
+//! Exit codes: 0 good, 1 the run failed, 2 wrong arguments or input, 130 interrupted (by the
+//! operating system, which leaves earlier outputs whole).
+
+mod failure;
+mod out;
+mod plan;
+mod progress;
+mod table;
+
+use clap::{Parser, Subcommand};
+
+pub use failure::Failure;
+pub use out::print;
+pub use plan::PlanArguments;
+pub use progress::Bar;
+
+/// Plans arrays of imaging air-shower telescopes.
+#[derive(Debug, Parser)]
+#[command(version, about, after_help = EXIT_CODES, arg_required_else_help = true)]
+pub struct Arguments {
+    #[command(subcommand)]
+    command: Command,
+}
+
+const EXIT_CODES: &str =
+    "Exit codes: 0 good, 1 the run failed, 2 wrong arguments or input, 130 interrupted.";
+
+#[derive(Debug, Subcommand)]
+enum Command {
+    /// Compare the layouts of a study: simulate, rank, report.
+    Plan(PlanArguments),
+}
+
+/// Runs a command.
+///
+/// # Errors
+/// [`Failure`] with its message and exit code.
+pub fn run(arguments: Arguments) -> Result<(), Failure> {
+    match arguments.command {
+        Command::Plan(arguments) => plan::run(&arguments),
+    }
+}

@@ -1,8 +1,25 @@
 //! What a plan found, and small writers around it: one file per output.
+//!
+//! [`PlanResult`] is plain data. Every writer takes it and gives the bytes of one file; only
+//! [`write_all`] touches the disk, all files at once.
 
+pub mod charts;
+pub mod figures;
+mod geography;
+mod hazards;
+mod page;
+mod provenance;
 mod result;
+mod stage;
+mod tables;
 
+pub use geography::layouts_geojson;
+pub use hazards::HAZARDS;
+pub use page::page;
+pub use provenance::{ranking_json, run_json};
 pub use result::{
     Approximation, AreaRow, Counter, KindRow, LayoutMap, LayoutRow, Model, PlacedTelescope,
     PlanResult, PoolRow, Provenance, RateRow, SiteSummary,
 };
+pub use stage::{ReportError, check_destination, files, write_all};
+pub use tables::{Table, effective_area_table, light_pool_table, ranking_table, rate_table};

@@ -3,10 +3,20 @@
 //! [`Study::read`] either gives a study whose every number is finite and in range, or one
 //! [`StudyError`] that names file, line, key, value and what is allowed.
 
+mod candidates;
+mod error;
+mod file;
+mod ground;
+mod instruments;
+mod pattern;
+mod reader;
 mod resolved;
+mod sky;
+mod suggestion;
 
+pub use error::StudyError;
+pub use file::MOST_BYTES;
 pub use resolved::{
-    Air, AirProfile, Background, Budget, Engine, Exclusion, Kind, Layout, NightSky, PixelShape,
-    Placed, Pointing, Ranking, Sensor, Site, SkyBrightness, Source, Spectrum, Study, Threshold,
-    Topology,
+    Air, Background, Budget, Engine, Exclusion, Layout, Placed, Pointing, Ranking, Site, Source,
+    Spectrum, Study,
 };

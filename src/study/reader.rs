@@ -72,8 +72,18 @@ impl<'a> Section<'a> {
     pub fn wrong(&self, key: &'static str, problem: impl Into<String>) -> StudyError {
         match self.value(key) {
             Some(value) => self.at(&value.span(), &self.key(key), true).because(problem),
-            None => self.at(&self.span, &self.key(key), false).because(problem),
+            None => self.absent(key).because(problem),
         }
+    }
+
+    /// The place of a key that is not there: its section's first line, if it has one.
+    fn absent(&self, key: &str) -> StudyError {
+        if self.path.is_empty() {
+            let mut error = StudyError::of_file(self.document.file, "");
+            error.key = key.to_owned();
+            return error;
+        }
+        self.at(&self.span, &self.key(key), false)
     }
 
     /// An error about this section as a whole.
@@ -98,7 +108,7 @@ impl<'a> Section<'a> {
         }
         let place = if self.path.is_empty() { "the study" } else { self.path.as_str() };
         let problem = format!("missing from {place}; write {wanted}");
-        self.at(&self.span, &self.key(key), false).because(problem)
+        self.absent(key).because(problem)
     }
 
     fn mismatch(&self, key: &str, value: Value<'a>, wanted: &str) -> StudyError {
@@ -192,9 +202,7 @@ impl<'a> Section<'a> {
     pub fn text_if_any(&self, key: &'static str) -> Outcome<Option<&'a str>> {
         let Some(value) = self.value(key) else { return Ok(None) };
         match value.get_ref().as_str() {
-            Some(text) if text.trim().is_empty() => {
-                Err(self.wrong(key, "is empty; write a text"))
-            }
+            Some(text) if text.trim().is_empty() => Err(self.wrong(key, "is empty; write a text")),
             Some(text) if text.chars().any(char::is_control) => {
                 Err(self.wrong(key, "holds control characters; write one line of text"))
             }

@@ -2,7 +2,9 @@
 
 use std::path::PathBuf;
 
+use crate::atmosphere::Atmosphere;
 use crate::shower::Species;
+use crate::telescope::{NightSky, TelescopeKind};
 
 /// A whole study.
 #[derive(Clone, Debug)]
@@ -26,7 +28,7 @@ pub struct Study {
     /// The sky's light.
     pub night_sky: NightSky,
     /// Telescope kinds.
-    pub kinds: Vec<Kind>,
+    pub kinds: Vec<TelescopeKind>,
     /// Candidate layouts, explicit and generated, in the order of the file.
     pub layouts: Vec<Layout>,
     /// Where the telescopes look.
@@ -90,20 +92,11 @@ pub struct Exclusion {
     pub outline_enu_m: Vec<[f64; 2]>,
 }
 
-/// Where the air's profile comes from.
-#[derive(Clone, Debug, PartialEq)]
-pub enum AirProfile {
-    /// A profile known by name.
-    Named(String),
-    /// A table in a file.
-    File(PathBuf),
-}
-
 /// The air above the site.
-#[derive(Clone, Debug, PartialEq)]
+#[derive(Clone, Debug)]
 pub struct Air {
-    /// Temperature and pressure by altitude.
-    pub profile: AirProfile,
+    /// Temperature, density, depth and refractivity by altitude.
+    pub atmosphere: Atmosphere,
     /// Vertical aerosol optical depth at 550 nm above the site.
     pub aerosol_depth_550nm: f64,
     /// Angstrom exponent of the aerosol.
@@ -116,118 +109,6 @@ pub struct Air {
     pub aerosol: bool,
     /// Whether ozone absorbs.
     pub ozone: bool,
-}
-
-/// How bright the sky is.
-#[derive(Clone, Copy, Debug, PartialEq)]
-pub enum SkyBrightness {
-    /// V magnitudes per square arcsecond.
-    VMagArcsec2(f64),
-    /// Photons per square metre, second and steradian from 300 to 650 nm.
-    PhotonsM2SSr(f64),
-}
-
-/// The night sky.
-#[derive(Clone, Copy, Debug, PartialEq)]
-pub struct NightSky {
-    /// Its brightness.
-    pub brightness: SkyBrightness,
-    /// Factor for the field (galactic plane above 1).
-    pub field_factor: f64,
-    /// Factor for moonlight.
-    pub moonlight_factor: f64,
-}
-
-/// Shape of a pixel.
-#[derive(Clone, Copy, Debug, PartialEq, Eq)]
-pub enum PixelShape {
-    /// Hexagons, triangular grid.
-    Hexagonal,
-    /// Squares, square grid.
-    Square,
-}
-
-/// The light sensor.
-#[derive(Clone, Debug, PartialEq)]
-pub enum Sensor {
-    /// A table known by name.
-    Named(String),
-    /// A table in a file: wavelength, efficiency.
-    File(PathBuf),
-}
-
-/// Which pixels must fire together.
-#[derive(Clone, Copy, Debug, PartialEq, Eq)]
-pub enum Topology {
-    /// `pixels` connected neighbours in any shape.
-    Neighbours {
-        /// How many.
-        pixels: usize,
-    },
-    /// `pixels` neighbours, each touching all the others where the grid allows it.
-    Compact {
-        /// How many.
-        pixels: usize,
-    },
-    /// Any `pixels` of the camera.
-    Majority {
-        /// How many.
-        pixels: usize,
-    },
-    /// A clipped sum over a patch.
-    PatchSum,
-}
-
-/// How a pixel threshold is set.
-#[derive(Clone, Copy, Debug, PartialEq)]
-pub enum Threshold {
-    /// Given, photoelectrons.
-    Fixed {
-        /// Photoelectrons.
-        pe: f64,
-    },
-    /// The lowest at which the array's chance coincidences stay below a rate.
-    LowestQuiet {
-        /// Allowed chance rate of the array, Hz.
-        accidental_rate_hz: f64,
-    },
-}
-
-/// A telescope kind.
-#[derive(Clone, Debug, PartialEq)]
-pub struct Kind {
-    /// Its name.
-    pub name: String,
-    /// Mirror area before obscuration, m2.
-    pub mirror_area_m2: f64,
-    /// Share of it in shadow.
-    pub obscuration: f64,
-    /// Mirror reflectivity: peak value of the published curve's shape.
-    pub reflectivity: f64,
-    /// Standard deviation of the point spread in one coordinate, degrees.
-    pub point_spread_deg: f64,
-    /// Pixel shape.
-    pub pixel_shape: PixelShape,
-    /// Distance between pixel centres, degrees.
-    pub pixel_pitch_deg: f64,
-    /// Diameter of the round field of view, degrees.
-    pub field_of_view_deg: f64,
-    /// Light-guide transmission.
-    pub light_guide: f64,
-    /// Sensor.
-    pub sensor: Sensor,
-    /// Relative standard deviation of the single-photoelectron pulse height.
-    pub single_pe_spread: f64,
-    /// Full width at half maximum of a pulse, ns.
-    pub pulse_width_ns: f64,
-    /// Coincidence gate of the pixels, ns.
-    pub gate_ns: f64,
-    /// Trigger topology.
-    pub topology: Topology,
-    /// Pixel threshold.
-    pub threshold: Threshold,
-    /// Cost of one telescope, in the study's unit.
-    pub cost: Option<f64>,
 }
 
 /// A telescope at its place.
@@ -261,8 +142,8 @@ pub struct Pointing {
     pub zenith_deg: f64,
     /// Azimuth from north through east, degrees.
     pub azimuth_deg: f64,
-    /// Half-angle of the cone that backgrounds come from, degrees; absent: field of view + 3.
-    pub cone_half_angle_deg: Option<f64>,
+    /// Half-angle of the cone that backgrounds come from, degrees.
+    pub cone_half_angle_deg: f64,
 }
 
 /// A spectrum.

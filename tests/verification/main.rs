@@ -6,4 +6,5 @@ mod command;
 mod hadronic;
 mod layout;
 mod light;
+mod report;
 mod telescope;

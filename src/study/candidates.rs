@@ -1,0 +1,177 @@
+//! Candidate layouts: explicit positions and patterns over spacings.
+
+use crate::telescope::TelescopeKind;
+
+use super::error::StudyError;
+use super::ground::holds;
+use super::pattern::{PATTERNS, pattern};
+use super::reader::{Section, limits};
+use super::resolved::{Layout, Placed, Site};
+
+const MOST_TELESCOPES: usize = 200;
+const MOST_LAYOUTS: usize = 10_000;
+
+/// Reads `[[layout]]` and `[[layout_family]]`.
+pub(super) fn layouts(
+    root: &Section<'_>,
+    kinds: &[TelescopeKind],
+    site: &Site,
+) -> Result<Vec<Layout>, StudyError> {
+    let mut layouts: Vec<Layout> = Vec::new();
+    for section in root.sections("layout")? {
+        let layout = explicit(&section, kinds, site)?;
+        admit(&section, layout, &mut layouts)?;
+        section.finish()?;
+    }
+    for section in root.sections("layout_family")? {
+        family(&section, kinds, site, &mut layouts)?;
+        section.finish()?;
+    }
+    if layouts.is_empty() {
+        let problem = "missing from the study; write at least one [[layout]] or [[layout_family]]";
+        return Err(root.wrong("layout", problem));
+    }
+    Ok(layouts)
+}
+
+/// Telescopes that must fire together, and within what time.
+fn condition(section: &Section<'_>, telescopes: usize) -> Result<(usize, f64), StudyError> {
+    let most = telescopes.max(1) as u64;
+    let condition = section.count_or("telescopes_required", 1, most, most.min(2))? as usize;
+    let window_ns = section.number_or("window_ns", limits(1.0, 10_000.0, "ns"), 80.0)?;
+    Ok((condition, window_ns))
+}
+
+fn kind_index(
+    section: &Section<'_>,
+    key: &'static str,
+    kinds: &[TelescopeKind],
+) -> Result<usize, StudyError> {
+    let names: Vec<&str> = kinds.iter().map(|kind| kind.name.as_str()).collect();
+    section.choice(key, &names)
+}
+
+fn explicit(
+    section: &Section<'_>,
+    kinds: &[TelescopeKind],
+    site: &Site,
+) -> Result<Layout, StudyError> {
+    let name = section.text("name")?.to_owned();
+    let mut telescopes = Vec::new();
+    for stand in section.sections("stand")? {
+        let kind = kind_index(&stand, "telescope", kinds)?;
+        let range = limits(-20_000.0, 20_000.0, "m");
+        let missing = || stand.wrong_section("no position; write at_enu_m = [[east, north], ...]");
+        let points = stand.points_if_any("at_enu_m", range)?.ok_or_else(missing)?;
+        for (index, point) in points.iter().enumerate() {
+            let up = point.get(2).copied().unwrap_or(0.0);
+            if !(up.abs() <= 1_000.0) {
+                let problem = format!("point {}: up must be from -1000 to 1000 m", index + 1);
+                return Err(stand.wrong("at_enu_m", problem));
+            }
+            let placed = Placed { kind, enu_m: [point[0], point[1], up] };
+            if let Err(problem) = stands(&placed, &telescopes, kinds, site) {
+                return Err(stand.wrong("at_enu_m", format!("point {}: {problem}", index + 1)));
+            }
+            telescopes.push(placed);
+        }
+        stand.finish()?;
+    }
+    let (condition, window_ns) = condition(section, telescopes.len())?;
+    Ok(Layout { name, telescopes, condition, window_ns, line: section.line() })
+}
+
+fn family(
+    section: &Section<'_>,
+    kinds: &[TelescopeKind],
+    site: &Site,
+    layouts: &mut Vec<Layout>,
+) -> Result<(), StudyError> {
+    let name = section.text("name")?;
+    let kind = kind_index(section, "telescope", kinds)?;
+    let shape = PATTERNS[section.choice("pattern", &PATTERNS)?];
+    let count = section.count("telescopes", 1, MOST_TELESCOPES as u64)? as usize;
+    let range = limits(1.0, 5_000.0, "m");
+    let missing = || section.wrong_section("no spacing; write spacings_m = [...], in metres");
+    let spacings = section.numbers_if_any("spacings_m", range)?.ok_or_else(missing)?;
+    if spacings.is_empty() {
+        return Err(section.wrong("spacings_m", "is empty; write at least one spacing"));
+    }
+    let turn = section.number_or("turn_deg", limits(-360.0, 360.0, "degrees"), 0.0)?.to_radians();
+    let centre = section.tuple_if_any::<2>("centre_enu_m", limits(-2e4, 2e4, "m"))?;
+    let centre = centre.unwrap_or_default();
+    let (condition, window_ns) = condition(section, count)?;
+    for spacing in spacings {
+        let mut telescopes = Vec::new();
+        for [x, y] in pattern(shape, count, spacing) {
+            // Azimuths turn from north towards east.
+            let east = centre[0] + x * turn.cos() + y * turn.sin();
+            let north = centre[1] - x * turn.sin() + y * turn.cos();
+            let placed = Placed { kind, enu_m: [east, north, 0.0] };
+            if let Err(problem) = stands(&placed, &telescopes, kinds, site) {
+                return Err(section.wrong("spacings_m", format!("at {spacing} m: {problem}")));
+            }
+            telescopes.push(placed);
+        }
+        let name = format!("{name} {spacing} m");
+        let layout = Layout { name, telescopes, condition, window_ns, line: section.line() };
+        admit(section, layout, layouts)?;
+    }
+    Ok(())
+}
+
+/// Whether a telescope can stand where it is put.
+fn stands(
+    placed: &Placed,
+    others: &[Placed],
+    kinds: &[TelescopeKind],
+    site: &Site,
+) -> Result<(), String> {
+    let [east, north, _] = placed.enu_m;
+    let radius =
+        |placed: &Placed| (kinds[placed.kind].mirror_area_m2 / core::f64::consts::PI).sqrt();
+    for other in others {
+        let distance = (other.enu_m[0] - east).hypot(other.enu_m[1] - north);
+        let least = radius(placed) + radius(other);
+        if distance < least {
+            return Err(format!(
+                "two telescopes stand on one spot: [{east}, {north}] is {distance:.1} m from \
+                 another; their mirrors need at least {least:.1} m"
+            ));
+        }
+    }
+    if !site.boundary_enu_m.is_empty() && !holds(&site.boundary_enu_m, [east, north]) {
+        return Err(format!("[{east:.1}, {north:.1}] lies outside the site's boundary"));
+    }
+    match site.exclusions.iter().find(|ground| holds(&ground.outline_enu_m, [east, north])) {
+        Some(ground) => {
+            Err(format!("[{east:.1}, {north:.1}] lies in excluded ground: {}", ground.name))
+        }
+        None => Ok(()),
+    }
+}
+
+fn admit(
+    section: &Section<'_>,
+    layout: Layout,
+    layouts: &mut Vec<Layout>,
+) -> Result<(), StudyError> {
+    if layout.telescopes.is_empty() {
+        return Err(
+            section.wrong_section("holds no telescope; write at least one [[layout.stand]]")
+        );
+    }
+    if layout.telescopes.len() > MOST_TELESCOPES {
+        let problem = format!("holds over {MOST_TELESCOPES} telescopes, the most allowed");
+        return Err(section.wrong_section(problem));
+    }
+    if layouts.iter().any(|known| known.name == layout.name) {
+        let problem = format!("two layouts are named \"{}\"; write another name", layout.name);
+        return Err(section.wrong("name", problem));
+    }
+    if layouts.len() == MOST_LAYOUTS {
+        return Err(section.wrong_section(format!("over {MOST_LAYOUTS} layouts; write fewer")));
+    }
+    layouts.push(layout);
+    Ok(())
+}
