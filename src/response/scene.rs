@@ -5,10 +5,12 @@ use nalgebra::Vector3;
 use crate::light::{LightModel, ShowerLight, View};
 use crate::numerics::{Stage, Stream};
 use crate::shower::{Direction, Primary};
-use crate::telescope::{Quantum, Readout, TelescopeKind};
+use crate::telescope::{ImageRecord, Quantum, Readout, TelescopeKind};
 use crate::units::degrees;
 
+use super::image::CellImage;
 use super::margin::{Code, code};
+use super::pad::PadKey;
 use super::sample::Word;
 use super::throw::{Throw, species_key};
 use super::{CORES_PER_SHOWER, EVENTS_PER_WORD};
@@ -20,15 +22,6 @@ pub struct Column {
     pub position_m: [f64; 3],
     /// Index of its kind.
     pub kind: usize,
-}
-
-impl Column {
-    /// Words that name it in the keys of random streams: position in millimetres and kind.
-    fn key(&self) -> [u64; 4] {
-        let mm = |metres: f64| (metres * 1e3).round() as i64 as u64;
-        let [x, y, z] = self.position_m;
-        [mm(x), mm(y), mm(z), self.kind as u64]
-    }
 }
 
 /// Images with fewer expected photoelectrons than this are not made: they cannot trigger a group
@@ -64,6 +57,17 @@ pub struct Scene<'a> {
 pub type PartMaker<'a> =
     dyn Fn(&Primary, &LightModel, &mut Stream) -> Vec<crate::light::Part> + Sync + 'a;
 
+/// What all columns saw of one word.
+#[derive(Clone, Debug, PartialEq)]
+pub struct WordCells {
+    /// The word.
+    pub word: Word,
+    /// Margin codes, 64 for each column.
+    pub codes: Vec<Code>,
+    /// Images by column; `event` counts within the word.
+    pub images: Vec<Vec<CellImage>>,
+}
+
 /// Working space of one thread.
 pub struct Bench<'a> {
     readouts: Vec<Readout<'a>>,
@@ -84,10 +88,16 @@ impl<'a> Scene<'a> {
         }
     }
 
-    /// Simulates one word: margin codes by column, 64 events each.
-    pub fn word(&self, throw: &Throw, number: usize, bench: &mut Bench<'_>) -> (Word, Vec<Code>) {
+    /// The keys of the columns.
+    pub fn pads(&self) -> Vec<PadKey> {
+        self.columns.iter().map(|column| PadKey::of(column, self.kinds)).collect()
+    }
+
+    /// Simulates one word.
+    pub fn word(&self, throw: &Throw, number: usize, bench: &mut Bench<'_>) -> WordCells {
         let thrown = throw.word(number);
         let mut codes = vec![0; self.columns.len() * EVENTS_PER_WORD];
+        let mut images = vec![Vec::new(); self.columns.len()];
         let mut angle_rad: f64 = 0.0;
         let towards = self.pointing.to_source();
         for (place, (primary, cores)) in thrown.showers.iter().enumerate() {
@@ -103,32 +113,34 @@ impl<'a> Scene<'a> {
             for (at, core) in cores.iter().enumerate() {
                 let event = place * CORES_PER_SHOWER + at;
                 for (index, column) in self.columns.iter().enumerate() {
-                    let margin = self.margin(&light, core, column, (&key, at), bench);
-                    codes[index * EVENTS_PER_WORD + event] = code(f64::from(margin));
+                    let record = self.image(&light, core, column, (&key, at), bench);
+                    let Some(record) = record else { continue };
+                    codes[index * EVENTS_PER_WORD + event] = code(f64::from(record.margin_pe));
+                    images[index].extend(CellImage::of(event as u32, &record));
                 }
             }
         }
         let (energy_gev, exposure, ring) = (thrown.energy_gev, thrown.exposure, thrown.ring);
-        (Word { energy_gev, exposure, ring, angle_rad }, codes)
+        WordCells { word: Word { energy_gev, exposure, ring, angle_rad }, codes, images }
     }
 
-    fn margin(
+    fn image(
         &self,
         light: &ShowerLight<'_>,
         core: &Vector3<f64>,
         column: &Column,
         (shower, core_number): (&[u64; 3], usize),
         bench: &mut Bench<'_>,
-    ) -> f32 {
+    ) -> Option<ImageRecord> {
         let pad = Vector3::from(column.position_m) - core;
         light.view(column.kind, &pad, &mut bench.view);
         let area = self.kinds[column.kind].collecting_area_m2() * self.light_scale;
         let expected = bench.view.density_m2 * area;
         if expected < LEAST_PHOTOELECTRONS {
-            return 0.0;
+            return None;
         }
         let weight = (expected / MOST_PHOTOELECTRONS).max(1.0);
-        let [x, y, z, kind] = column.key();
+        let [x, y, z, kind] = PadKey::of(column, self.kinds).stream_words();
         let key = [shower[0], shower[1], shower[2], core_number as u64, x, y, z, kind];
         let mut stream = Stream::keyed(self.seed, Stage::Image, &key);
         let (right, up) = self.pointing.transverse();
@@ -153,7 +165,6 @@ impl<'a> Scene<'a> {
                 });
             },
         );
-        let record = bench.readouts[column.kind].image(&bench.quanta, &mut stream);
-        record.map_or(0.0, |record| record.margin_pe)
+        bench.readouts[column.kind].image(&bench.quanta, &mut stream)
     }
 }

@@ -10,7 +10,7 @@ use crate::shower::{Direction, Primary, Species};
 use super::{CORES_PER_SHOWER, EVENTS_PER_WORD, SHOWERS_PER_WORD};
 
 /// What is thrown at the array.
-#[derive(Clone, Debug)]
+#[derive(Clone, Debug, PartialEq)]
 pub struct Throw {
     /// Kind of primary.
     pub species: Species,
@@ -47,7 +47,7 @@ pub struct Thrown {
 }
 
 impl Throw {
-    /// Number of words in all rings.
+    /// Number of words in all rings of one repetition.
     pub fn word_count(&self) -> usize {
         self.words * self.rings_m.len()
     }
@@ -63,12 +63,14 @@ impl Throw {
         PI * (self.rings_m[ring].powi(2) - inner * inner)
     }
 
-    /// The word of one number: the same whatever else is thrown.
+    /// The word of one number: the same whatever else is thrown. Numbers from
+    /// [`Throw::word_count`] on repeat the throw with fresh randomness; a sample of n repetitions
+    /// divides the exposures by n.
     ///
     /// Energies are stratified: word w of n draws its energy from the w-th of n equal shares of
     /// the thrown spectrum, so that a rate's error is that of showers, not of energies.
     pub fn word(&self, number: usize) -> Thrown {
-        let (ring, place) = (number % self.rings_m.len(), number / self.rings_m.len());
+        let (ring, place) = (number % self.rings_m.len(), number / self.rings_m.len() % self.words);
         let key = [species_key(self.species), number as u64];
         let mut stream = Stream::keyed(self.seed, Stage::Primary, &key);
         let rank = (place as f64 + stream.uniform()) / self.words as f64;
@@ -134,6 +136,24 @@ pub fn species_key(species: Species) -> u64 {
             1_000 + 1_000 * u64::from(mass_number) + u64::from(charge)
         }
     }
+}
+
+/// The species that a key names.
+pub fn species_of_key(key: u64) -> Option<Species> {
+    Some(match key {
+        1 => Species::Gamma,
+        2 => Species::Electron,
+        3 => Species::Positron,
+        4 => Species::MuonMinus,
+        5 => Species::MuonPlus,
+        6 => Species::Proton,
+        7 => Species::Neutron,
+        _ => {
+            let mass_number = u8::try_from((key.checked_sub(1_000)?) / 1_000).ok()?;
+            let charge = u8::try_from(key % 1_000).ok()?;
+            (mass_number > 0).then_some(Species::Nucleus { mass_number, charge })?
+        }
+    })
 }
 
 #[cfg(test)]
