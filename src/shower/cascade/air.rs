@@ -5,6 +5,8 @@ use nalgebra::Vector3;
 use crate::atmosphere::Atmosphere;
 use crate::consts::EARTH_RADIUS_M;
 
+use super::material::NORMAL_DENSITY_KG_M3;
+
 const STEP_M: f64 = 25.0;
 
 /// Density and vertical depth on a 25 m grid: linear in density (error 2e-6), and the altitude of
@@ -14,7 +16,7 @@ pub struct AirTable {
     observer_altitude_m: f64,
     curvature_per_m: f64,
     base_m: f64,
-    density_g_cm2_m: Vec<f64>,
+    density: Vec<(f64, f64)>,
     depth_g_cm2: Vec<f64>,
 }
 
@@ -25,13 +27,16 @@ impl AirTable {
         let count = ((atmosphere.top_m() - base_m) / STEP_M) as usize;
         let altitude = |index: usize| base_m + STEP_M * index as f64;
         // kg/m3 to g/cm2 per metre: 1 kg/m2 is 0.1 g/cm2.
-        let density = |index| 0.1 * atmosphere.density_kg_m3(altitude(index));
+        let density = |index| {
+            let density = atmosphere.density_kg_m3(altitude(index));
+            (0.1 * density, 0.5 * (density / NORMAL_DENSITY_KG_M3).log10())
+        };
         let depth = |index| atmosphere.depth_g_cm2(altitude(index));
         Self {
             observer_altitude_m,
             curvature_per_m: 0.5 / (EARTH_RADIUS_M + observer_altitude_m),
             base_m,
-            density_g_cm2_m: (0..count).map(density).collect(),
+            density: (0..count).map(density).collect(),
             depth_g_cm2: (0..count).map(depth).collect(),
         }
     }
@@ -46,27 +51,30 @@ impl AirTable {
     /// Altitude of the last entry, m.
     #[inline]
     pub fn top_m(&self) -> f64 {
-        self.base_m + STEP_M * (self.density_g_cm2_m.len() - 2) as f64
+        self.base_m + STEP_M * (self.density.len() - 2) as f64
     }
 
-    /// Mass per area and metre, g/cm2 per m; the density in kg/m3 is ten times this.
+    /// Mass per area and metre, g/cm2 per m (a tenth of the density in kg/m3), and half the
+    /// common logarithm of the density over the normal one.
     #[inline]
-    pub fn density_g_cm2_m(&self, altitude_m: f64) -> f64 {
-        self.read(&self.density_g_cm2_m, altitude_m)
+    pub fn density(&self, altitude_m: f64) -> (f64, f64) {
+        let (low, share) = self.place(altitude_m);
+        let (a, b) = (self.density[low], self.density[low + 1]);
+        (a.0 + share * (b.0 - a.0), a.1 + share * (b.1 - a.1))
     }
 
     /// Vertical depth, g/cm2.
     #[inline]
     pub fn depth_g_cm2(&self, altitude_m: f64) -> f64 {
-        self.read(&self.depth_g_cm2, altitude_m)
+        let (low, share) = self.place(altitude_m);
+        self.depth_g_cm2[low] + share * (self.depth_g_cm2[low + 1] - self.depth_g_cm2[low])
     }
 
     #[inline]
-    fn read(&self, table: &[f64], altitude_m: f64) -> f64 {
+    fn place(&self, altitude_m: f64) -> (usize, f64) {
         let place = ((altitude_m - self.base_m) * (1.0 / STEP_M)).max(0.0);
-        let low = (place as usize).min(table.len() - 2);
-        let share = (place - low as f64).min(1.0);
-        table[low] + share * (table[low + 1] - table[low])
+        let low = (place as usize).min(self.density.len() - 2);
+        (low, (place - low as f64).min(1.0))
     }
 
     /// Altitude of a vertical depth, m, looked for downward from `from_m`.
@@ -77,7 +85,7 @@ impl AirTable {
         if above == 0 {
             // Below the table: continue with the lowest density.
             let excess = depth_g_cm2 - self.depth_g_cm2[0];
-            return self.base_m - excess / self.density_g_cm2_m[0];
+            return self.base_m - excess / self.density[0].0;
         }
         let high = above.min(self.depth_g_cm2.len() - 1);
         let (lower, upper) = (self.depth_g_cm2[high - 1], self.depth_g_cm2[high]);

@@ -11,9 +11,11 @@ pub mod compton;
 pub mod material;
 pub mod pair;
 pub mod particle;
+mod photon;
 pub mod rates;
 pub mod scattering;
 pub mod transport;
+mod vertex;
 
 pub use particle::{CascadeParticle, CascadeSpecies, Cuts, Ledger, NoSink, TrackSink, TrackStep};
 pub use transport::{Environment, transport};
