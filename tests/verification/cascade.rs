@@ -58,15 +58,18 @@ fn explore() {
         let (p, c) = (pair::pair_cm2_g(mev * 1e-3), compton::compton_cm2_g(mev * 1e-3));
         println!("{mev} {p:.5} {c:.5} {:.5} {nist} {:.4}", p + c, (p + c) / nist);
     }
-    println!("limit {} 7/9X0 {}", pair::pair_limit_cm2_g(), 7. / 9. / material::radiation_length_g_cm2());
+    println!(
+        "limit {} 7/9X0 {}",
+        pair::pair_limit_cm2_g(),
+        7. / 9. / material::radiation_length_g_cm2()
+    );
     let air = Atmosphere::us1976();
     for (cut, energy, n) in [(1.0, 100.0, 20), (20.0, 100.0, 100), (20.0, 1000.0, 10)] {
         let cuts = if cut < 5.0 { Cuts::low(1e-3) } else { Cuts::at_threshold(21.5e-3) };
         let start = std::time::Instant::now();
         let environment = Environment::new(&air, 0.0, Vector3::zeros(), cuts);
         println!("tables {:?}", start.elapsed());
-        let mut sink =
-            Profile { tracks: vec![0.0; 104], total: 0.0, air: environment.air.clone() };
+        let mut sink = Profile { tracks: vec![0.0; 104], total: 0.0, air: environment.air.clone() };
         let mut sum = Ledger::default();
         let start = std::time::Instant::now();
         for shower in 0..n {
@@ -90,10 +93,7 @@ fn explore() {
             sum.steps as f64 / tev,
             took * 1e9 / sum.steps as f64
         );
-        println!(
-            "track/(E X0/Ec) {}",
-            sink.total / n as f64 / (energy / 0.08792 * 36.62)
-        );
+        println!("track/(E X0/Ec) {}", sink.total / n as f64 / (energy / 0.08792 * 36.62));
         for bin in (0..100).step_by(5) {
             print!("{:.1} ", sink.tracks[bin] / n as f64);
         }

@@ -6,6 +6,8 @@
 pub mod emitters;
 pub mod hillas;
 pub mod longitudinal;
+pub mod shipped;
 
 pub use emitters::{Emitter, EmitterNode, EmitterTable};
 pub use longitudinal::{Development, GaisserHillas};
+pub use shipped::DevelopmentTable;

@@ -1,0 +1,107 @@
+//! The files that ship: emitters as Parquet, ages and development as CSV with provenance.
+
+use std::fmt::Write as _;
+use std::io;
+use std::path::Path;
+
+use polars::prelude::{Column, DataFrame, ParquetCompression, ParquetWriter};
+
+use super::maker::{Calibration, CalibrationSettings};
+
+/// Writes `emitters.parquet`, `emitter_ages.csv` and `development.csv` into a folder.
+///
+/// # Errors
+/// What the file system or the Parquet writer says.
+pub fn write(
+    calibration: &Calibration,
+    settings: &CalibrationSettings,
+    atmosphere: &str,
+    folder: &Path,
+) -> io::Result<()> {
+    let header = provenance(settings, atmosphere);
+    std::fs::write(folder.join("emitter_ages.csv"), ages_csv(calibration, &header))?;
+    std::fs::write(folder.join("development.csv"), development_csv(calibration, &header))?;
+    let mut bytes = Vec::new();
+    let mut frame = emitter_frame(calibration).map_err(io::Error::other)?;
+    ParquetWriter::new(&mut bytes)
+        .with_compression(ParquetCompression::Snappy)
+        .finish(&mut frame)
+        .map_err(io::Error::other)?;
+    std::fs::write(folder.join("emitters.parquet"), bytes)
+}
+
+fn provenance(settings: &CalibrationSettings, atmosphere: &str) -> String {
+    let runs = |list: &[(f64, u64)]| {
+        list.iter().map(|(e, n)| format!("{n} x {e} GeV")).collect::<Vec<_>>().join(", ")
+    };
+    format!(
+        "# Made by the reference cascade of this program, version {}, seed {}, atmosphere {},\n\
+         # vertical, no magnetic field, particles above {} GeV.\n\
+         # Emitters from photon showers: {}; age windows +-{}.\n\
+         # Development from photons and electrons: {}.\n",
+        env!("CARGO_PKG_VERSION"),
+        settings.seed,
+        atmosphere,
+        settings.floor_gev,
+        runs(&settings.emitter_runs),
+        settings.window,
+        runs(&settings.development_runs),
+    )
+}
+
+fn ages_csv(calibration: &Calibration, header: &str) -> String {
+    let mut text = format!(
+        "{header}# fraction: track length above the floor over that of the fitted profiles.\n\
+         age,fraction,samples\n"
+    );
+    for node in &calibration.emitters.nodes {
+        let _ = writeln!(text, "{},{:.5},{}", node.age, node.fraction, node.emitters.len());
+    }
+    text
+}
+
+fn development_csv(calibration: &Calibration, header: &str) -> String {
+    let mut text = format!(
+        "{header}# u = ln(depth of maximum after the start / g cm-2), v = ln(scale length / g cm-2),\n\
+         # w = ln(track length per energy / g cm-2 GeV-1): means and covariances.\n\
+         species,energy_gev,showers,start_g_cm2,u,v,w,uu,uv,uw,vv,vw,ww\n"
+    );
+    for row in &calibration.development {
+        let name = format!("{:?}", row.species).to_lowercase();
+        let _ =
+            write!(text, "{name},{},{},{:.3}", row.energy_gev, row.showers, row.mean_start_g_cm2);
+        for value in row.mean.iter().chain(&row.covariance) {
+            let _ = write!(text, ",{value:.6}");
+        }
+        text.push('\n');
+    }
+    text
+}
+
+fn emitter_frame(calibration: &Calibration) -> Result<DataFrame, polars::error::PolarsError> {
+    let nodes = &calibration.emitters.nodes;
+    let column = |name: &str, value: &dyn Fn(&crate::shower::profile::Emitter) -> f32| {
+        let values: Vec<f32> =
+            nodes.iter().flat_map(|node| node.emitters.iter().map(value)).collect();
+        Column::new(name.into(), values)
+    };
+    let rows = nodes.iter().map(|node| node.emitters.len()).sum();
+    let ages: Vec<f32> = nodes
+        .iter()
+        .flat_map(|node| std::iter::repeat_n(node.age as f32, node.emitters.len()))
+        .collect();
+    DataFrame::new(
+        rows,
+        vec![
+            Column::new("age".into(), ages),
+            column("energy_gev", &|e| e.energy_gev),
+            column("angle_x_rad", &|e| e.angle_rad[0]),
+            column("angle_y_rad", &|e| e.angle_rad[1]),
+            column("offset_x_g_cm2", &|e| e.offset_g_cm2[0]),
+            column("offset_y_g_cm2", &|e| e.offset_g_cm2[1]),
+            column("lag_g_cm2", &|e| e.lag_g_cm2),
+            column("angle_lever", &|e| e.angle_lever),
+            column("offset_lever", &|e| e.offset_lever),
+        ],
+    )
+}
