@@ -7,4 +7,5 @@ mod hadronic;
 mod layout;
 mod light;
 mod report;
+mod response;
 mod telescope;
