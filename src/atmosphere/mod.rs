@@ -1,5 +1,9 @@
-//! The air: profiles, depth, refractive index, extinction, slant geometry.
+//! The air: profile, depth, refractive index, extinction, slant geometry.
 
-mod standard;
+pub mod extinction;
+pub mod profile;
+pub mod refraction;
+pub mod standard;
 
-pub use standard::Atmosphere;
+pub use extinction::{Extinction, OpticalDepths};
+pub use profile::{Atmosphere, AtmosphereError};

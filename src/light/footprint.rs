@@ -27,7 +27,7 @@ pub struct LightSettings<'a> {
     pub transverse_field_ut: f64,
     /// The emitters.
     pub emitters: &'a EmitterTable,
-    /// Number of slabs; 40 is converged to 1 % (test `verify_pool_converges_in_slabs`).
+    /// Number of slabs; 36 is converged to 1 % (test `verify_pool_converges_in_slabs_and_samples`).
     pub slabs: usize,
 }
 

@@ -131,6 +131,12 @@ impl Sample {
         found.ok().map(|place| &cells[place])
     }
 
+    /// Cells whose expected light was too little for an image, or that saw none.
+    pub fn dark_cells(&self) -> u64 {
+        let dark = |events: &Vec<Code>| events.iter().filter(|code| **code == 0).count() as u64;
+        self.margins.iter().map(dark).sum()
+    }
+
     /// One bit an event: whether a column fires at a threshold.
     ///
     /// # Shape
