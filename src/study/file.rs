@@ -14,9 +14,8 @@ use super::{candidates, ground, instruments, sky};
 
 /// Largest study file, and largest file that a study names, bytes.
 pub const MOST_BYTES: u64 = 8 << 20;
-/// Most showers of one primary, and most array events of one primary.
+/// Most showers of one primary.
 const MOST_SHOWERS: u64 = 100_000_000;
-const MOST_EVENTS: u64 = 2_000_000_000;
 
 /// The files that a study names, by the order in which it names them.
 pub(super) struct Companions {
@@ -154,22 +153,6 @@ fn name(path: &Path, root: &Section<'_>) -> Result<String, StudyError> {
 fn budget(section: Section<'_>) -> Result<Budget, StudyError> {
     let gamma_showers = section.count("gamma_showers", 16, MOST_SHOWERS)?;
     let background_showers = section.count("background_showers", 16, MOST_SHOWERS)?;
-    let cores_per_shower = section.count_or("cores_per_shower", 64, 65_536, 64)?;
-    if cores_per_shower % 64 != 0 {
-        return Err(section.wrong("cores_per_shower", "write a multiple of 64"));
-    }
-    for (key, showers) in
-        [("gamma_showers", gamma_showers), ("background_showers", background_showers)]
-    {
-        let events = showers.saturating_mul(cores_per_shower);
-        if events > MOST_EVENTS {
-            let problem = format!(
-                "times cores_per_shower {cores_per_shower} gives {events} array events; \
-                 at most {MOST_EVENTS} are allowed"
-            );
-            return Err(section.wrong(key, problem));
-        }
-    }
     let gamma_energy_gev = energies(&section, "gamma_energy_gev", [10.0, 30_000.0])?;
     let background_energy_gev = energies(&section, "background_energy_gev", [20.0, 100_000.0])?;
     let background_rate_error =
@@ -179,7 +162,6 @@ fn budget(section: Section<'_>) -> Result<Budget, StudyError> {
     Ok(Budget {
         gamma_showers,
         background_showers,
-        cores_per_shower,
         gamma_energy_gev,
         background_energy_gev,
         background_rate_error,
@@ -202,7 +184,8 @@ fn energies(
 }
 
 fn ranking(section: Option<Section<'_>>) -> Result<Ranking, StudyError> {
-    const SCORES: [&str; 3] = ["gamma_rate_hz", "threshold_gev", "gamma_rate_per_cost"];
+    const SCORES: [&str; 3] =
+        ["gamma_rate_hz", "gamma_rate_per_cost", "gamma_rate_per_root_background"];
     let Some(section) = section else {
         return Ok(Ranking { score: SCORES[0].into(), resamples: 400 });
     };

@@ -185,12 +185,10 @@ pub struct Background {
 /// How much to simulate.
 #[derive(Clone, Copy, Debug, PartialEq)]
 pub struct Budget {
-    /// Gamma showers.
+    /// Gamma showers, each seen from eight core positions.
     pub gamma_showers: u64,
-    /// Showers of each background.
+    /// Showers of each background, each seen from eight core positions.
     pub background_showers: u64,
-    /// Core positions of each shower, a multiple of 64.
-    pub cores_per_shower: u64,
     /// Gamma energies, GeV.
     pub gamma_energy_gev: [f64; 2],
     /// Background energies, GeV.

@@ -1,0 +1,212 @@
+//! From a study to its result: simulate once, score every layout on the same events.
+
+mod models;
+mod pool;
+mod rows;
+mod setup;
+
+use std::collections::BTreeMap;
+
+use thiserror::Error;
+
+use crate::layout::{at_least, rank};
+use crate::light::LightModel;
+use crate::rates::{self, Estimate, Spectrum, SpectrumError};
+use crate::report::PlanResult;
+use crate::response::{Column, Sample, Scene};
+use crate::study::Study;
+
+/// A study that cannot be planned.
+#[derive(Debug, Error)]
+pub enum PlanError {
+    /// A spectrum that is not known.
+    #[error(transparent)]
+    Spectrum(#[from] SpectrumError),
+    /// An engine that is not built yet.
+    #[error("engine = \"{0}\" is not available for plan; write \"profile\"")]
+    Engine(&'static str),
+    /// Nothing triggered.
+    #[error("no layout has a single gamma trigger; raise gamma_showers or lower the thresholds")]
+    Empty,
+}
+
+/// How far a long computation has come.
+pub trait Progress: Sync {
+    /// A new stage of `total` steps begins.
+    fn stage(&self, name: &str, total: u64);
+    /// Some steps are done.
+    fn advance(&self, steps: u64);
+}
+
+/// No display.
+impl Progress for () {
+    fn stage(&self, _: &str, _: u64) {}
+    fn advance(&self, _: u64) {}
+}
+
+/// A simulated primary with the spectra it is weighted by.
+struct Weighted {
+    sample: Sample,
+    spectrum: Spectrum,
+}
+
+/// One layout's votes and rates.
+struct Scored {
+    gamma_plane: Vec<u64>,
+    gamma_words: Vec<f64>,
+    gamma: Estimate,
+    backgrounds: Vec<(Vec<u64>, Vec<f64>, Estimate)>,
+}
+
+impl Scored {
+    fn background(&self) -> Estimate {
+        let value = self.backgrounds.iter().map(|(_, _, rate)| rate.value).sum();
+        let square: f64 = self.backgrounds.iter().map(|(_, _, rate)| rate.error.powi(2)).sum();
+        Estimate { value, error: square.sqrt() }
+    }
+}
+
+/// Everything the result is made from.
+struct Planned<'a> {
+    study: &'a Study,
+    thresholds_pe: Vec<f64>,
+    sky_per_ns: Vec<f64>,
+    columns: Vec<Column>,
+    members: Vec<Vec<usize>>,
+    gamma: Weighted,
+    backgrounds: Vec<Weighted>,
+}
+
+/// Simulates a study, scores its layouts and ranks them.
+///
+/// # Errors
+/// [`PlanError`] if the study names a spectrum or an engine that is not there.
+pub fn plan(study: &Study, progress: &dyn Progress) -> Result<PlanResult, PlanError> {
+    if study.engine != crate::study::Engine::Profile {
+        return Err(PlanError::Engine(study.engine.name()));
+    }
+    let spectra = setup::spectra(study)?;
+    progress.stage("light tables", 1);
+    let light = setup::light_model(study);
+    progress.advance(1);
+    let planned = simulate(study, &light, spectra, progress);
+    progress.stage("light pool", 1);
+    let pool = pool::rows(study, &light);
+    progress.advance(1);
+    let scored: Vec<Scored> =
+        (0..study.layouts.len()).map(|layout| planned.score(layout, 1.0)).collect();
+    if scored.iter().all(|layout| layout.gamma.value <= 0.0) {
+        return Err(PlanError::Empty);
+    }
+    let factors = planned.score_factors(&scored);
+    let scores: Vec<Vec<f64>> = scored
+        .iter()
+        .zip(&factors)
+        .map(|(layout, factor)| layout.gamma_words.iter().map(|rate| rate * factor).collect())
+        .collect();
+    let ranked = rank(&scores, study.ranking.resamples, study.seed);
+    Ok(rows::result(&planned, &light, &scored, &ranked, &factors, pool))
+}
+
+fn simulate<'a>(
+    study: &'a Study,
+    light: &LightModel,
+    (gamma_spectrum, background_spectra): (Spectrum, Vec<Spectrum>),
+    progress: &dyn Progress,
+) -> Planned<'a> {
+    let sky_per_ns: Vec<f64> =
+        study.kinds.iter().map(|kind| kind.sky_photoelectrons_per_ns(&study.night_sky)).collect();
+    let (columns, members) = columns(study);
+    let scene = Scene {
+        seed: study.seed,
+        kinds: &study.kinds,
+        sky_per_ns: sky_per_ns.clone(),
+        light,
+        pointing: setup::pointing(study),
+        field_ut: setup::field_ut(study),
+        columns: columns.clone(),
+        light_scale: 1.0,
+        parts: &crate::light::parts,
+    };
+    let run = |name: &str, throw: crate::response::Throw| {
+        progress.stage(name, throw.word_count() as u64);
+        Sample::simulate(&scene, &throw, &|| progress.advance(1))
+    };
+    let gamma = Weighted {
+        sample: run("gamma showers", setup::gamma_throw(study, &columns)),
+        spectrum: gamma_spectrum,
+    };
+    let backgrounds = study
+        .backgrounds
+        .iter()
+        .zip(background_spectra)
+        .map(|(background, spectrum)| {
+            let name = format!("{} showers", background.species);
+            let throw = setup::background_throw(study, background.species, &columns);
+            Weighted { sample: run(&name, throw), spectrum }
+        })
+        .collect();
+    let thresholds_pe = setup::thresholds_pe(study, &sky_per_ns);
+    Planned { study, thresholds_pe, sky_per_ns, columns, members, gamma, backgrounds }
+}
+
+/// The union of all telescopes of all layouts, and which of them each layout has.
+fn columns(study: &Study) -> (Vec<Column>, Vec<Vec<usize>>) {
+    let mut known: BTreeMap<([i64; 3], usize), usize> = BTreeMap::new();
+    let mut columns = Vec::new();
+    let members = study
+        .layouts
+        .iter()
+        .map(|layout| {
+            let places = layout.telescopes.iter().map(|placed| {
+                let key = (placed.enu_m.map(|metres| (metres * 1e3).round() as i64), placed.kind);
+                *known.entry(key).or_insert_with(|| {
+                    columns.push(Column { position_m: placed.enu_m, kind: placed.kind });
+                    columns.len() - 1
+                })
+            });
+            places.collect()
+        })
+        .collect();
+    (columns, members)
+}
+
+impl Planned<'_> {
+    /// Votes and rates of one layout with all light scaled by a factor, which is the same as all
+    /// thresholds divided by it.
+    fn score(&self, layout: usize, light_scale: f64) -> Scored {
+        let vote = |weighted: &Weighted| {
+            let planes: Vec<Vec<u64>> = self.members[layout]
+                .iter()
+                .map(|&column| {
+                    let threshold = self.thresholds_pe[self.columns[column].kind] / light_scale;
+                    weighted.sample.plane(column, threshold)
+                })
+                .collect();
+            let slices: Vec<&[u64]> = planes.iter().map(Vec::as_slice).collect();
+            let plane = at_least(&slices, self.study.layouts[layout].condition);
+            let words = rates::word_rates(&weighted.sample.words, &plane, &weighted.spectrum);
+            let rate = rates::rate_hz(&weighted.sample.words, &words);
+            (plane, words, rate)
+        };
+        let (gamma_plane, gamma_words, gamma) = vote(&self.gamma);
+        let backgrounds = self.backgrounds.iter().map(vote).collect();
+        Scored { gamma_plane, gamma_words, gamma, backgrounds }
+    }
+
+    /// What turns a gamma rate into the score asked for.
+    fn score_factors(&self, scored: &[Scored]) -> Vec<f64> {
+        let of_layout = |(layout, scored): (usize, &Scored)| match self.study.ranking.score.as_str()
+        {
+            "gamma_rate_per_cost" => 1.0 / self.cost(layout),
+            "gamma_rate_per_root_background" => 1.0 / scored.background().value.sqrt(),
+            _ => 1.0,
+        };
+        scored.iter().enumerate().map(of_layout).collect()
+    }
+
+    fn cost(&self, layout: usize) -> f64 {
+        let telescopes = &self.study.layouts[layout].telescopes;
+        telescopes.iter().map(|placed| self.study.kinds[placed.kind].cost).sum()
+    }
+}

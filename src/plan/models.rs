@@ -1,0 +1,90 @@
+//! The published models a run used, and what is approximate.
+
+use crate::rates::Spectrum;
+use crate::report::{Approximation, Model};
+use crate::study::Study;
+
+use super::Weighted;
+
+pub fn models(study: &Study, gamma: &Spectrum, backgrounds: &[Weighted]) -> Vec<Model> {
+    let mut models = vec![
+        ("air profile", "U.S. Standard Atmosphere 1976, NOAA/NASA/USAF"),
+        ("refractive index of air", "Ciddor 1996, Appl. Opt. 35, 1566"),
+        ("light yield and emission angle", "Frank & Tamm 1937, Dokl. Akad. Nauk SSSR 14, 107"),
+        ("shower profile", "Gaisser & Hillas 1977, Proc. 15th ICRC 8, 353"),
+        ("shower fluctuations", "Grindhammer & Peters 2000, arXiv:hep-ex/0001020"),
+        ("energies and angles of emitters", "Hillas 1982, J. Phys. G 8, 1461"),
+        ("lateral spread of emitters", "Roberg & Nordheim 1949, Phys. Rev. 75, 444"),
+        (
+            "pixel noise",
+            "Campbell 1909, Proc. Camb. Phil. Soc. 15, 117; Panjer 1981, ASTIN Bull. 12, 22; Rice 1945, Bell Syst. Tech. J. 24, 46",
+        ),
+        ("accidental coincidences", "Eckart & Shonka 1938, Phys. Rev. 53, 752"),
+        ("night-sky colour", "Benn & Ellison 1998, La Palma Technical Note 115"),
+        ("order of layouts", "Efron 1979, Ann. Stat. 7, 1"),
+    ];
+    if study.air.molecular {
+        models.push((
+            "molecular scattering",
+            "Bodhaine et al. 1999, J. Atmos. Oceanic Technol. 16, 1854",
+        ));
+    }
+    if study.air.aerosol {
+        models.push(("aerosol", "Angstrom 1929, Geogr. Ann. 11, 156"));
+    }
+    if !backgrounds.is_empty() {
+        models.push((
+            "hadronic interactions",
+            "scaling generator held to the moments of Gaisser 1990, Cosmic Rays and Particle Physics; cross-sections after Aglietta et al. 2009, Phys. Rev. D 79, 032004",
+        ));
+    }
+    let own = |purpose: String, citation: &str| Model { purpose, citation: citation.into() };
+    let mut models: Vec<Model> =
+        models.into_iter().map(|(purpose, citation)| own(purpose.into(), citation)).collect();
+    models.push(own("gamma-ray spectrum".into(), &gamma.source));
+    for weighted in backgrounds {
+        let purpose = format!("{} spectrum", weighted.sample.species);
+        models.push(own(purpose, &weighted.spectrum.source));
+    }
+    models
+}
+
+pub fn approximations(study: &Study) -> Vec<Approximation> {
+    let rows = [
+        (
+            "The magnetic field is off in the light pool.",
+            "A field of 40 uT across the axis takes about a quarter of the light of a 100 GeV gamma at the shoulder of the pool and a tenth at 1 TeV (published studies of the effect, from memory); thresholds are optimistic by that much or less.",
+        ),
+        (
+            "Emitters follow published distributions of energy and angle; their lateral spread follows from the angles by diffusion.",
+            "Light inside 150 m is uncertain by 20 to 30 %, beyond 250 m by a factor of about 1.5 (estimate; the particle-by-particle reference is not yet compared).",
+        ),
+        (
+            "The hadronic generator makes pions only, and muons give no light.",
+            "Single-telescope background misses local muons; the array background misses a few per cent of light beyond 100 m (estimate).",
+        ),
+        (
+            "Bits ignore the array's coincidence window.",
+            "The vote is an upper bound; light of one shower reaches telescopes within 200 m inside 10 ns of a plane front, well inside usual windows.",
+        ),
+        (
+            "Noise is drawn in pixels with light and their neighbours.",
+            "Groups of pure noise elsewhere are counted by the accidental rate only.",
+        ),
+        (
+            "Cosmic-ray nuclei are superpositions of free nucleons; only the species named in the study are thrown.",
+            "Helium adds about 40 % to a proton background at these thresholds (published fluxes).",
+        ),
+    ];
+    let mut all: Vec<Approximation> = rows
+        .into_iter()
+        .map(|(what, size)| Approximation { what: what.into(), size: size.into() })
+        .collect();
+    if study.pointing.zenith_deg > 60.0 {
+        all.push(Approximation {
+            what: "Zenith angles above 60 degrees.".into(),
+            size: "Light spreads over kilometres and the small-angle tables are outside their tested range.".into(),
+        });
+    }
+    all
+}

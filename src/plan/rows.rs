@@ -1,0 +1,302 @@
+//! The plain result of a plan, row by row.
+
+use crate::layout::{Ranked, rank};
+use crate::light::LightModel;
+use crate::rates::{self, EnergyBin, effective_areas, rate, threshold_gev};
+use crate::report::{
+    AreaRow, Counter, KindRow, LayoutMap, LayoutRow, PlacedTelescope, PlanResult, PoolRow,
+    Provenance, RateRow, SiteSummary,
+};
+use crate::telescope::{Threshold, accidental};
+
+use super::{Planned, Scored, Weighted, models};
+
+const BINS_PER_DECADE: usize = 5;
+
+pub fn result(
+    planned: &Planned<'_>,
+    light: &LightModel,
+    scored: &[Scored],
+    ranked: &[Ranked],
+    factors: &[f64],
+    light_pool: Vec<PoolRow>,
+) -> PlanResult {
+    let mut effective_areas = Vec::new();
+    let mut differential_rates = Vec::new();
+    for place in ranked {
+        let layout = &scored[place.layout];
+        let name = &planned.study.layouts[place.layout].name;
+        let gamma = (&planned.gamma, &layout.gamma_plane, &layout.gamma_words);
+        let backgrounds = planned.backgrounds.iter().zip(&layout.backgrounds);
+        let all = [gamma]
+            .into_iter()
+            .chain(backgrounds.map(|(weighted, (plane, words, _))| (weighted, plane, words)));
+        for (weighted, plane, words) in all {
+            energy_rows(
+                name,
+                weighted,
+                plane,
+                words,
+                &mut effective_areas,
+                &mut differential_rates,
+            );
+        }
+    }
+    PlanResult {
+        provenance: provenance(planned),
+        site: site(planned, light),
+        ranking: ranked
+            .iter()
+            .enumerate()
+            .map(|(rank, place)| {
+                layout_row(planned, &scored[place.layout], rank, place, factors[place.layout])
+            })
+            .collect(),
+        effective_areas,
+        differential_rates,
+        light_pool,
+        kinds: kinds(planned),
+        maps: ranked.iter().map(|place| map(planned, place.layout)).collect(),
+        counters: counters(planned),
+        warnings: warnings(planned, scored, ranked),
+        approximations: models::approximations(planned.study),
+    }
+}
+
+fn layout_row(
+    planned: &Planned<'_>,
+    scored: &Scored,
+    rank: usize,
+    place: &Ranked,
+    factor: f64,
+) -> LayoutRow {
+    let layout = &planned.study.layouts[place.layout];
+    let kinds = &planned.study.kinds;
+    let of_kind = |kind: usize| layout.telescopes.iter().filter(|t| t.kind == kind).count();
+    let names: Vec<String> = (0..kinds.len())
+        .filter(|&kind| of_kind(kind) > 0)
+        .map(|kind| format!("{} x {}", of_kind(kind), kinds[kind].name))
+        .collect();
+    let background = scored.background();
+    let threshold = threshold_gev(&planned.gamma.sample.words, &scored.gamma_words);
+    let telescope_rates: Vec<f64> =
+        layout.telescopes.iter().map(|placed| planned.accidental_hz(placed.kind)).collect();
+    LayoutRow {
+        rank: rank + 1,
+        tier: place.tier,
+        layout: layout.name.clone(),
+        telescopes: layout.telescopes.len(),
+        kinds: names.join(" + "),
+        condition: layout.condition,
+        mirror_area_m2: layout.telescopes.iter().map(|t| kinds[t.kind].mirror_area_m2).sum(),
+        gamma_rate_hz: scored.gamma.value,
+        gamma_rate_error_hz: scored.gamma.error,
+        background_rate_hz: background.value,
+        background_rate_error_hz: background.error,
+        threshold_gev: threshold.value,
+        threshold_error_gev: threshold.error,
+        accidental_rate_hz: accidental::array_rate_hz(
+            &telescope_rates,
+            layout.condition,
+            layout.window_ns,
+        ),
+        cost: planned.cost(place.layout),
+        order_probability: place.order_probability,
+        score: place.score,
+        score_error: scored.gamma.error * factor,
+    }
+}
+
+fn energy_rows(
+    layout: &str,
+    weighted: &Weighted,
+    plane: &[u64],
+    words: &[f64],
+    areas: &mut Vec<AreaRow>,
+    densities: &mut Vec<RateRow>,
+) {
+    let throw = &weighted.sample.throw;
+    let primary = throw.species.to_string();
+    let bins = EnergyBin::cover(throw.energy_gev.0, throw.energy_gev.1, BINS_PER_DECADE);
+    let of_bins = effective_areas(&weighted.sample.words, plane, throw.solid_angle_sr(), &bins);
+    for (bin, area) in bins.iter().zip(of_bins) {
+        areas.push(AreaRow {
+            layout: layout.into(),
+            primary: primary.clone(),
+            energy_low_gev: bin.low_gev,
+            energy_high_gev: bin.high_gev,
+            area_m2: area.value,
+            error_m2: area.error,
+        });
+        let inside =
+            weighted.sample.words.iter().zip(words).filter(|(word, _)| {
+                word.energy_gev >= bin.low_gev && word.energy_gev < bin.high_gev
+            });
+        let (words, rates): (Vec<_>, Vec<_>) = inside.map(|(word, rate)| (*word, *rate)).unzip();
+        let estimate = rates::rate_hz(&words, &rates);
+        let width = bin.high_gev - bin.low_gev;
+        densities.push(RateRow {
+            layout: layout.into(),
+            primary: primary.clone(),
+            energy_low_gev: bin.low_gev,
+            energy_high_gev: bin.high_gev,
+            rate_hz_gev: estimate.value / width,
+            error_hz_gev: estimate.error / width,
+        });
+    }
+}
+
+fn provenance(planned: &Planned<'_>) -> Provenance {
+    let study = planned.study;
+    let simulated = [&planned.gamma].into_iter().chain(&planned.backgrounds).map(|weighted| {
+        let sample = &weighted.sample;
+        let showers = sample.words.len() * crate::response::SHOWERS_PER_WORD;
+        (sample.species.to_string(), showers as u64, sample.events() as u64)
+    });
+    Provenance {
+        study: study.name.clone(),
+        title: study.title.clone(),
+        study_checksum: study.checksum.clone(),
+        version: env!("CARGO_PKG_VERSION").into(),
+        seed: study.seed,
+        engine: study.engine.name().into(),
+        score: study.ranking.score.clone(),
+        resamples: study.ranking.resamples,
+        simulated: simulated.collect(),
+        models: models::models(study, &planned.gamma.spectrum, &planned.backgrounds),
+    }
+}
+
+fn site(planned: &Planned<'_>, light: &LightModel) -> SiteSummary {
+    let (site, pointing) = (&planned.study.site, &planned.study.pointing);
+    let depth = planned.study.air.atmosphere.depth_g_cm2(light.column.observer_altitude_m);
+    SiteSummary {
+        name: site.name.clone(),
+        latitude_deg: site.latitude_deg,
+        longitude_deg: site.longitude_deg,
+        altitude_m: site.altitude_m,
+        depth_g_cm2: depth,
+        zenith_deg: pointing.zenith_deg,
+        azimuth_deg: pointing.azimuth_deg,
+        boundary_enu_m: site.boundary_enu_m.clone(),
+        exclusions_enu_m: site.exclusions.iter().map(|e| e.outline_enu_m.clone()).collect(),
+        control_house_enu_m: site.control_house_enu_m,
+    }
+}
+
+fn kinds(planned: &Planned<'_>) -> Vec<KindRow> {
+    let row = |(index, kind): (usize, &crate::telescope::TelescopeKind)| KindRow {
+        kind: kind.name.clone(),
+        mirror_area_m2: kind.collecting_area_m2(),
+        pixels: kind.camera.pixels.len(),
+        pixel_pitch_deg: kind.camera.pitch_deg,
+        field_of_view_deg: kind.camera.field_of_view_deg,
+        sky_pe_per_ns: planned.sky_per_ns[index],
+        threshold_pe: planned.thresholds_pe[index],
+        threshold_choice: match kind.threshold {
+            Threshold::FixedPe(_) => "fixed".into(),
+            Threshold::QuietHz(rate) => format!("lowest with less than {rate} Hz from the sky"),
+        },
+        accidental_rate_hz: planned.accidental_hz(index),
+        topology: format!("{} connected pixels, any shape", kind.connected_pixels),
+    };
+    planned.study.kinds.iter().enumerate().map(row).collect()
+}
+
+fn map(planned: &Planned<'_>, layout: usize) -> LayoutMap {
+    let layout = &planned.study.layouts[layout];
+    let telescopes = layout.telescopes.iter().map(|placed| {
+        let kind = &planned.study.kinds[placed.kind];
+        let [east_m, north_m, up_m] = placed.enu_m;
+        let (name, mirror_area_m2) = (kind.name.clone(), kind.mirror_area_m2);
+        PlacedTelescope { kind: name, mirror_area_m2, east_m, north_m, up_m }
+    });
+    LayoutMap { layout: layout.name.clone(), telescopes: telescopes.collect() }
+}
+
+fn counters(planned: &Planned<'_>) -> Vec<Counter> {
+    [&planned.gamma]
+        .into_iter()
+        .chain(&planned.backgrounds)
+        .map(|weighted| Counter {
+            name: format!("{} cells without an image", weighted.sample.species),
+            count: weighted.sample.dark_cells(),
+            of: (weighted.sample.events() * planned.columns.len()) as u64,
+        })
+        .collect()
+}
+
+/// What limits the numbers: light lost at the edges of the throw, and whether the order survives
+/// another light scale.
+fn warnings(planned: &Planned<'_>, scored: &[Scored], ranked: &[Ranked]) -> Vec<String> {
+    let mut warnings = Vec::new();
+    let Some(best) = ranked.first() else { return warnings };
+    let leader = &scored[best.layout];
+    let edges = [(&planned.gamma, &leader.gamma_words, leader.gamma)].into_iter().chain(
+        planned.backgrounds.iter().zip(&leader.backgrounds).map(|(w, (_, r, e))| (w, r, *e)),
+    );
+    for (weighted, words, estimate) in edges {
+        let (name, sample) = (weighted.sample.species, &weighted.sample);
+        let edge = rate::edge_fraction(&sample.words, words);
+        let throw = &sample.throw;
+        let radius = throw.rings_m[throw.rings_m.len() - 1];
+        let inner = throw.rings_m[throw.rings_m.len() - 2];
+        warnings.push(format!(
+            "{name}: {:.1} % of the leading layout's rate comes from cores between {inner:.0} m and \
+             the thrown radius of {radius:.0} m; less lies beyond",
+            100.0 * edge
+        ));
+        let relative = estimate.error / estimate.value;
+        let wanted = planned.study.budget.background_rate_error;
+        if throw.cone_rad > 0.0 && relative > wanted {
+            warnings.push(format!(
+                "{name}: the leading layout's rate is known to {:.1} %, not the {:.1} % asked for; \
+                 raise background_showers about {:.1} times",
+                100.0 * relative,
+                100.0 * wanted,
+                (relative / wanted).powi(2)
+            ));
+        }
+    }
+    for scale in [0.85, 1.15] {
+        warnings.push(order_at(planned, ranked, scale));
+    }
+    warnings
+}
+
+/// Whether the order by gamma rate changes with all light scaled.
+fn order_at(planned: &Planned<'_>, ranked: &[Ranked], scale: f64) -> String {
+    let words: Vec<Vec<f64>> = (0..planned.study.layouts.len())
+        .map(|layout| planned.score(layout, scale).gamma_words)
+        .collect();
+    let again = rank(&words, 0, planned.study.seed);
+    let place = |layout: usize| again.iter().position(|r| r.layout == layout).unwrap_or(0);
+    let name = |r: &Ranked| planned.study.layouts[r.layout].name.as_str();
+    let flips: Vec<String> = ranked
+        .windows(2)
+        .filter(|pair| place(pair[0].layout) > place(pair[1].layout))
+        .map(|pair| format!("{} / {}", name(&pair[0]), name(&pair[1])))
+        .collect();
+    let what = format!("with all light times {scale}");
+    if flips.is_empty() {
+        format!("{what}: neighbours in the order by gamma rate keep their places")
+    } else {
+        format!("{what}: neighbours change places: {}", flips.join("; "))
+    }
+}
+
+impl Planned<'_> {
+    /// Accidental trigger rate of one telescope of a kind at its threshold, Hz.
+    fn accidental_hz(&self, kind: usize) -> f64 {
+        let (threshold, sky) = (self.thresholds_pe[kind], self.sky_per_ns[kind]);
+        let kind = &self.study.kinds[kind];
+        let pixel = accidental::PixelNoise::new(kind, sky).crossing_rate_hz(threshold);
+        let groups = accidental::connected_groups(&kind.camera, kind.connected_pixels);
+        accidental::telescope_rate_hz(
+            groups,
+            kind.connected_pixels,
+            pixel,
+            kind.coincidence_gate_ns,
+        )
+    }
+}

@@ -1,0 +1,154 @@
+//! What a study asks for, in the terms of the stages.
+
+use nalgebra::Vector3;
+
+use crate::atmosphere::Extinction;
+use crate::light::{Detector, LightModel, LightSettings};
+use crate::numerics::{Stage, Stream};
+use crate::rates::{Spectrum, SpectrumError};
+use crate::response::{Column, SHOWERS_PER_WORD, Throw};
+use crate::shower::profile::hillas::{self, Spread};
+use crate::shower::{Direction, Species};
+use crate::study::{self, Study};
+use crate::telescope::{Threshold, accidental};
+use crate::units::radians;
+
+/// Slabs of air and emitters at each age: converged to 1 % and 3 % (test
+/// `verify_pool_converges_in_slabs_and_samples`).
+const SLABS: usize = 36;
+const EMITTERS: usize = 10_000;
+/// Energies are thrown as E to this negative power.
+const THROWN_INDEX: f64 = 1.5;
+/// How far from the outermost telescope a shower can trigger, m at zenith: beyond this the rate is
+/// extrapolated by the warning on the outermost ring.
+const REACH_M: f64 = 420.0;
+
+/// The band in which the light pool is reported, nm.
+pub const POOL_BAND_NM: (f64, f64) = (300.0, 600.0);
+
+pub fn pointing(study: &Study) -> Direction {
+    Direction {
+        zenith_rad: radians(study.pointing.zenith_deg),
+        azimuth_rad: radians(study.pointing.azimuth_deg),
+    }
+}
+
+pub fn field_ut(study: &Study) -> Vector3<f64> {
+    study.site.field_ut.map_or_else(Vector3::zeros, Vector3::from)
+}
+
+/// The reference source's spectrum, and one for each background.
+pub fn spectra(study: &Study) -> Result<(Spectrum, Vec<Spectrum>), SpectrumError> {
+    let resolve = |spectrum: &study::Spectrum| match spectrum {
+        study::Spectrum::Named(name) => Spectrum::named(name),
+        study::Spectrum::PowerLaw { flux_m2_s_tev, pivot_tev, index, cutoff_tev } => {
+            Ok(Spectrum::power_law(*flux_m2_s_tev, *pivot_tev, *index, *cutoff_tev))
+        }
+    };
+    let gamma = resolve(&study.sources[0].spectrum)?;
+    let backgrounds = study.backgrounds.iter().map(|background| resolve(&background.spectrum));
+    Ok((gamma, backgrounds.collect::<Result<_, _>>()?))
+}
+
+/// The extinction a study asks for.
+pub fn extinction(study: &Study) -> Extinction {
+    Extinction {
+        rayleigh: study.air.molecular,
+        aerosol: study.air.aerosol,
+        ozone: study.air.ozone,
+        aerosol_depth_550nm: study.air.aerosol_depth_550nm,
+        angstrom_exponent: study.air.angstrom_exponent,
+        aerosol_scale_height_m: study.air.aerosol_scale_height_m,
+    }
+}
+
+/// Light tables for the study's kinds, in their order, and last for plain photons.
+pub fn light_model(study: &Study) -> LightModel {
+    let table = hillas::table(Spread::FULL, EMITTERS, 1);
+    let (air, altitude_m) = (&study.air.atmosphere, study.site.altitude_m);
+    let extinction = extinction(study);
+    let settings = LightSettings {
+        atmosphere: air,
+        transmission: &|emission_m, zenith_rad, wavelength_nm| {
+            extinction.transmission(air, emission_m, altitude_m, zenith_rad, wavelength_nm)
+        },
+        observer_altitude_m: altitude_m,
+        zenith_rad: radians(study.pointing.zenith_deg),
+        transverse_field_ut: 0.0,
+        emitters: &table,
+        slabs: SLABS,
+    };
+    let efficiencies: Vec<_> =
+        study.kinds.iter().map(|kind| move |nm: f64| kind.efficiency(nm)).collect();
+    let mut detectors: Vec<Detector<'_>> = study
+        .kinds
+        .iter()
+        .zip(&efficiencies)
+        .map(|(kind, efficiency)| Detector {
+            name: &kind.name,
+            band_nm: kind.band_nm(),
+            efficiency,
+        })
+        .collect();
+    detectors.push(Detector { name: "photons", band_nm: POOL_BAND_NM, efficiency: &|_| 1.0 });
+    LightModel::new(&settings, &detectors)
+}
+
+/// The pixel threshold of each kind.
+pub fn thresholds_pe(study: &Study, sky_per_ns: &[f64]) -> Vec<f64> {
+    let kinds = study.kinds.iter().zip(sky_per_ns);
+    kinds
+        .map(|(kind, &sky)| match kind.threshold {
+            Threshold::FixedPe(pe) => pe,
+            Threshold::QuietHz(rate) => accidental::quiet_threshold_pe(kind, sky, rate),
+        })
+        .collect()
+}
+
+pub fn gamma_throw(study: &Study, columns: &[Column]) -> Throw {
+    let energy_gev = study.budget.gamma_energy_gev;
+    throw(study, Species::Gamma, energy_gev, 0.0, study.budget.gamma_showers, columns)
+}
+
+pub fn background_throw(study: &Study, species: Species, columns: &[Column]) -> Throw {
+    let cone = radians(study.pointing.cone_half_angle_deg);
+    let energy_gev = study.budget.background_energy_gev;
+    throw(study, species, energy_gev, cone, study.budget.background_showers, columns)
+}
+
+fn throw(
+    study: &Study,
+    species: Species,
+    energy_gev: [f64; 2],
+    cone_rad: f64,
+    showers: u64,
+    columns: &[Column],
+) -> Throw {
+    let count = columns.len() as f64;
+    let mean = |axis: usize| columns.iter().map(|c| c.position_m[axis]).sum::<f64>() / count;
+    let centre_m = [mean(0), mean(1)];
+    let extent = columns
+        .iter()
+        .map(|c| (c.position_m[0] - centre_m[0]).hypot(c.position_m[1] - centre_m[1]))
+        .fold(0.0, f64::max);
+    let secant = 1.0 / radians(study.pointing.zenith_deg).cos();
+    let outer = study.budget.impact_radius_m.unwrap_or(extent + REACH_M * secant);
+    let rings_m = vec![0.3 * outer, 0.6 * outer, outer];
+    let words = (showers as usize).div_ceil(SHOWERS_PER_WORD * rings_m.len()).max(8);
+    Throw {
+        species,
+        seed: study.seed,
+        energy_gev: (energy_gev[0], energy_gev[1]),
+        index: THROWN_INDEX,
+        pointing: pointing(study),
+        cone_rad,
+        centre_m,
+        rings_m,
+        words,
+    }
+}
+
+/// A stream for tables of the report, by purpose and number.
+pub fn table_stream(study: &Study, purpose: u64, number: u64) -> Stream {
+    Stream::keyed(study.seed, Stage::Table, &[purpose, number])
+}
