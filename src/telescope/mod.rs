@@ -8,13 +8,18 @@ pub mod accidental;
 pub mod camera;
 pub mod curve;
 pub mod kind;
+pub mod noise;
 pub mod readout;
 pub mod sky;
 pub mod summary;
+pub mod trigger;
+pub mod waveform;
 
 pub use camera::{Camera, PixelShape};
 pub use curve::{Curve, CurveError};
+pub use noise::Noise;
 pub use kind::{KindError, TelescopeKind, Threshold};
 pub use readout::{ImageRecord, Quantum, Readout};
 pub use sky::{Brightness, NightSky};
 pub use summary::ImageSummary;
+pub use trigger::Topology;

@@ -3,7 +3,9 @@
 use crate::numerics::Stream;
 
 use super::kind::TelescopeKind;
+use super::noise::{HeightLaw, Noise};
 use super::summary::ImageSummary;
+use super::trigger::{Topology, compact_groups};
 
 /// One detected photoelectron, as the direction it came from relative to the pointing.
 #[derive(Clone, Copy, Debug, PartialEq)]
@@ -33,24 +35,29 @@ pub struct ImageRecord {
 
 /// Pixels below this height take no part in the moments, in units of the noise RMS added to 2 pe.
 const CLEANING_SIGMA: f32 = 3.0;
-/// Sky photoelectrons that can reach a sample: pulses within this many sigma.
-const NOISE_REACH_SIGMA: f64 = 3.0;
-/// Mean number of pulses above which shaped noise is drawn as a gaussian.
-const GAUSSIAN_PULSES: f64 = 30.0;
 
 /// Turns photoelectrons into trigger margins; holds the working space, so that an image allocates
-/// nothing.
+/// nothing once the space has grown to the largest image.
 ///
 /// A pixel's height is the largest over its photoelectrons' times of the sum of gaussian pulses of
-/// unit mean peak, plus shaped sky noise at that time, less its mean. Noise is drawn in the pixels
-/// with light and in their neighbours only: groups of pure noise elsewhere are counted by the
-/// accidental rate instead. The peak search tries at most eight of a pixel's photoelectrons, which
-/// loses under 2 % of the height (test `verify_pixel_height_against_waveform`).
+/// unit mean peak, plus shaped sky noise at that time, less its mean; or the largest peak of the
+/// noise alone within one gate of the image's mean time, if that is higher. Pixels join if they peak
+/// within a gate of each other. Connected and compact patterns draw noise in the pixels with light
+/// and their neighbours only: groups of pure noise further off are the accidental rate's. Majority
+/// draws the highest of the other pixels by order statistics, so it leaves nothing out. Patch sums
+/// add heights at the time of the patch's tallest pixel. At most eight of a pixel's photoelectrons
+/// are tried as its peak.
+///
+/// # Validity
+/// Against waveforms of every pixel: `verify_trigger_probability_against_waveforms`.
 pub struct Readout<'a> {
     kind: &'a TelescopeKind,
-    sky_per_ns: f64,
+    topology: Topology,
     sigma_ns: f32,
     noise_rms: f32,
+    moment: HeightLaw,
+    peaks: HeightLaw,
+    maxima: HeightLaw,
     per_pixel: Vec<Vec<(f32, f32)>>,
     height: Vec<f32>,
     peak_ns: Vec<f32>,
@@ -58,6 +65,10 @@ pub struct Readout<'a> {
     mark: Vec<u8>,
     parent: Vec<u16>,
     members: Vec<u16>,
+    groups: Vec<Vec<u16>>,
+    groups_of: Vec<Vec<u32>>,
+    /// Heights and times raised so far (majority).
+    raised: Vec<(f32, f32)>,
 }
 
 const EMPTY: u8 = 0;
@@ -66,21 +77,44 @@ const LIT: u8 = 2;
 const RAISED: u8 = 3;
 
 impl<'a> Readout<'a> {
-    /// A readout for one kind under a sky of a given photoelectron rate per pixel.
+    /// A readout for one kind under a sky of a given photoelectron rate per pixel, with the kind's
+    /// own number of connected pixels.
     pub fn new(kind: &'a TelescopeKind, sky_per_ns: f64) -> Self {
+        Self::with_topology(kind, sky_per_ns, Topology::Connected(kind.connected_pixels))
+    }
+
+    /// A readout with another trigger pattern.
+    pub fn with_topology(kind: &'a TelescopeKind, sky_per_ns: f64, topology: Topology) -> Self {
         let pixels = kind.camera.pixels.len();
+        let noise = Noise::of_pixel(kind, sky_per_ns);
+        let groups = match topology {
+            Topology::Compact(size) => compact_groups(&kind.camera, size),
+            _ => Vec::new(),
+        };
+        let mut groups_of = vec![Vec::new(); pixels];
+        for (index, group) in groups.iter().enumerate() {
+            for &pixel in group {
+                groups_of[usize::from(pixel)].push(index as u32);
+            }
+        }
         Self {
             kind,
-            sky_per_ns,
+            topology,
             sigma_ns: kind.pulse_sigma_ns() as f32,
             noise_rms: noise_rms_pe(kind, sky_per_ns) as f32,
+            moment: noise.moment(),
+            peaks: noise.peaks(2.0 * kind.coincidence_gate_ns),
+            maxima: noise.maxima(2.0 * kind.coincidence_gate_ns),
             per_pixel: vec![Vec::new(); pixels],
             height: vec![0.0; pixels],
             peak_ns: vec![0.0; pixels],
-            touched: Vec::new(),
+            touched: Vec::with_capacity(pixels),
             mark: vec![EMPTY; pixels],
             parent: vec![0; pixels],
             members: vec![0; pixels],
+            groups,
+            groups_of,
+            raised: Vec::with_capacity(pixels + 64),
         }
     }
 
@@ -91,29 +125,74 @@ impl<'a> Readout<'a> {
         if sum <= 0.0 {
             return None;
         }
-        let mean_time = time / sum;
+        let time_ns = time / sum;
         let lit = self.touched.len();
         for place in 0..lit {
             let pixel = usize::from(self.touched[place]);
             let (height, peak) = pulse_peak(&self.per_pixel[pixel], self.sigma_ns);
-            self.height[pixel] = height + self.noise(stream);
-            self.peak_ns[pixel] = peak;
+            (self.height[pixel], self.peak_ns[pixel]) =
+                self.with_noise(Some((height, peak)), time_ns, stream);
         }
-        for place in 0..lit {
-            let kind = self.kind;
+        let rings = match self.topology {
+            Topology::Connected(1) | Topology::Compact(1) | Topology::Majority(_) => 0,
+            Topology::Connected(_) | Topology::Compact(_) => 1,
+            Topology::PatchSum(_) => 2,
+        };
+        let mut from = 0;
+        for _ in 0..rings {
+            let to = self.touched.len();
+            self.surround(from, to, time_ns, stream);
+            from = to;
+        }
+        let summary = self.summary();
+        let margin_pe = match self.topology {
+            Topology::Connected(need) => self.connected_margin(need),
+            Topology::Compact(_) => self.compact_margin(),
+            Topology::Majority(need) => self.majority_margin(need, time_ns, stream),
+            Topology::PatchSum(clip_pe) => self.patch_margin(clip_pe as f32),
+        };
+        Some(ImageRecord { margin_pe, photoelectrons: sum, time_ns, summary })
+    }
+
+    /// Draws noise in the neighbours of some touched pixels.
+    fn surround(&mut self, from: usize, to: usize, time_ns: f32, stream: &mut Stream) {
+        let kind = self.kind;
+        for place in from..to {
             for &neighbour in kind.camera.neighbours(usize::from(self.touched[place])) {
                 let pixel = usize::from(neighbour);
                 if self.mark[pixel] == EMPTY {
                     self.mark[pixel] = NOISY;
-                    self.height[pixel] = self.noise(stream);
-                    self.peak_ns[pixel] = f32::NAN;
+                    (self.height[pixel], self.peak_ns[pixel]) =
+                        self.with_noise(None, time_ns, stream);
                     self.touched.push(neighbour);
                 }
             }
         }
-        let summary = self.summary();
-        let margin_pe = self.margin();
-        Some(ImageRecord { margin_pe, photoelectrons: sum, time_ns: mean_time, summary })
+    }
+
+    /// Height and time of the peak of a pixel with light (its own peak and time) or without.
+    fn with_noise(
+        &self,
+        light: Option<(f32, f32)>,
+        time_ns: f32,
+        stream: &mut Stream,
+    ) -> (f32, f32) {
+        let patch = matches!(self.topology, Topology::PatchSum(_));
+        let Some((signal, at)) = light else {
+            let law = if patch { &self.moment } else { &self.maxima };
+            return (law.draw(stream), self.noise_time(time_ns, stream));
+        };
+        let here = signal + self.moment.draw(stream);
+        let elsewhere = if patch { here } else { self.peaks.draw(stream) };
+        if elsewhere > here {
+            return (elsewhere, self.noise_time(time_ns, stream));
+        }
+        (here, at)
+    }
+
+    /// A time within a gate of the image.
+    fn noise_time(&self, time_ns: f32, stream: &mut Stream) -> f32 {
+        time_ns + self.kind.coincidence_gate_ns as f32 * (2.0 * stream.uniform() - 1.0) as f32
     }
 
     fn clear(&mut self) {
@@ -147,48 +226,36 @@ impl<'a> Readout<'a> {
         (sum, time)
     }
 
-    /// Shaped sky noise at one moment, mean removed.
-    fn noise(&self, stream: &mut Stream) -> f32 {
-        let sigma = f64::from(self.sigma_ns);
-        let window = 2.0 * NOISE_REACH_SIGMA * sigma;
-        let mean = self.sky_per_ns * window;
-        if mean > GAUSSIAN_PULSES {
-            return self.noise_rms * stream.normal() as f32;
-        }
-        let mut height = -self.sky_per_ns * sigma * core::f64::consts::TAU.sqrt();
-        for _ in 0..stream.poisson(mean) {
-            let shift = NOISE_REACH_SIGMA * (2.0 * stream.uniform() - 1.0);
-            let gain = (1.0 + self.kind.pulse_spread * stream.normal()).max(0.0);
-            height += gain * (-0.5 * shift * shift).exp();
-        }
-        height as f32
+    /// Sorts the touched pixels by height, falling.
+    fn ordered(&mut self) -> Vec<u16> {
+        let mut order = core::mem::take(&mut self.touched);
+        let height = &self.height;
+        order.sort_unstable_by(|a, b| {
+            height[usize::from(*b)].total_cmp(&height[usize::from(*a)]).then(a.cmp(b))
+        });
+        order
     }
 
-    /// The margin: raise pixels from the highest down and join neighbours that peak together, until
-    /// a group has enough.
-    fn margin(&mut self) -> f32 {
-        let mut order = core::mem::take(&mut self.touched);
-        order.sort_unstable_by(|a, b| {
-            let (a, b) = (usize::from(*a), usize::from(*b));
-            self.height[b].total_cmp(&self.height[a]).then(a.cmp(&b))
-        });
-        let need = self.kind.connected_pixels as u16;
+    /// Raises pixels from the highest down and joins neighbours that peak together, until a group
+    /// has enough.
+    fn connected_margin(&mut self, need: usize) -> f32 {
+        let order = self.ordered();
+        let kind = self.kind;
         let mut margin = 0.0;
         for &pixel in &order {
-            let pixel_index = usize::from(pixel);
-            self.mark[pixel_index] = RAISED;
-            self.parent[pixel_index] = pixel;
-            self.members[pixel_index] = 1;
+            let here = usize::from(pixel);
+            self.mark[here] = RAISED;
+            self.parent[here] = pixel;
+            self.members[here] = 1;
             let mut largest = 1;
-            let kind = self.kind;
-            for &neighbour in kind.camera.neighbours(pixel_index) {
+            for &neighbour in kind.camera.neighbours(here) {
                 let other = usize::from(neighbour);
-                if self.mark[other] == RAISED && self.together(pixel_index, other) {
+                if self.mark[other] == RAISED && self.together(here, other) {
                     largest = largest.max(self.join(pixel, neighbour));
                 }
             }
-            if largest >= need {
-                margin = self.height[pixel_index].max(0.0);
+            if usize::from(largest) >= need {
+                margin = self.height[here].max(0.0);
                 break;
             }
         }
@@ -196,10 +263,94 @@ impl<'a> Readout<'a> {
         margin
     }
 
-    /// Whether two pixels peak within the gate; pure noise may peak at any time.
+    /// The best of all compact groups whose pixels peak together.
+    fn compact_margin(&self) -> f32 {
+        let mut margin = 0.0_f32;
+        for &pixel in &self.touched {
+            for &index in &self.groups_of[usize::from(pixel)] {
+                let group = &self.groups[index as usize];
+                if group[0] != pixel {
+                    continue; // Counted from its first pixel.
+                }
+                let whole = group.iter().all(|&p| self.mark[usize::from(p)] != EMPTY);
+                let pairs = || group.iter().flat_map(|a| group.iter().map(move |b| (*a, *b)));
+                if whole && pairs().all(|(a, b)| self.together(a.into(), b.into())) {
+                    let least = group.iter().map(|&p| self.height[usize::from(p)]);
+                    margin = margin.max(least.fold(f32::INFINITY, f32::min));
+                }
+            }
+        }
+        margin
+    }
+
+    /// The n-th largest of pixels that all peak within one gate, unlit pixels included.
+    fn majority_margin(&mut self, need: usize, time_ns: f32, stream: &mut Stream) -> f32 {
+        self.raised.clear();
+        for &pixel in &self.touched {
+            let pixel = usize::from(pixel);
+            self.raised.push((self.height[pixel], self.peak_ns[pixel]));
+        }
+        // The highest of m equal laws, then the next below it: share u^(1/m), then u^(1/(m-1)) of
+        // that, and so on.
+        let mut others = self.kind.camera.pixels.len() - self.touched.len();
+        let mut share = 1.0_f64;
+        let most = 2 * need;
+        for _ in 0..most.min(others) {
+            share *= stream.uniform_positive().powf(1.0 / others as f64);
+            let height = self.maxima.quantile(share);
+            let time = self.noise_time(time_ns, stream);
+            self.raised.push((height, time));
+            others -= 1;
+        }
+        self.raised.sort_unstable_by(|a, b| b.0.total_cmp(&a.0).then(a.1.total_cmp(&b.1)));
+        let gate = self.kind.coincidence_gate_ns as f32;
+        for place in 0..self.raised.len() {
+            let (height, last) = self.raised[place];
+            let seen = &self.raised[..=place];
+            // Every window that holds the new time begins at the time of one of its pixels.
+            let full = seen.iter().any(|&(_, start)| {
+                let inside = |time: f32| (start..=start + gate).contains(&time);
+                inside(last) && seen.iter().filter(|(_, time)| inside(*time)).count() >= need
+            });
+            if full {
+                return height.max(0.0);
+            }
+        }
+        0.0
+    }
+
+    /// The largest sum of clipped heights over a pixel and its neighbours.
+    fn patch_margin(&self, clip_pe: f32) -> f32 {
+        let kind = self.kind;
+        let scale = -0.5 / (self.sigma_ns * self.sigma_ns);
+        let mut margin = 0.0_f32;
+        for &centre in &self.touched {
+            let near = kind.camera.neighbours(usize::from(centre));
+            let all = || near.iter().copied().chain([centre]).map(usize::from);
+            if all().any(|p| self.mark[p] == EMPTY) {
+                continue;
+            }
+            let lit = all().filter(|&p| self.mark[p] == LIT);
+            let Some(tallest) = lit.max_by(|a, b| self.height[*a].total_cmp(&self.height[*b]))
+            else {
+                continue;
+            };
+            let at = self.peak_ns[tallest];
+            let sum: f32 = all()
+                .map(|p| {
+                    let late = if self.mark[p] == LIT { self.peak_ns[p] - at } else { 0.0 };
+                    (self.height[p] * (scale * late * late).exp()).min(clip_pe)
+                })
+                .sum();
+            margin = margin.max(sum);
+        }
+        margin
+    }
+
+    /// Whether two pixels peak within the gate.
     fn together(&self, a: usize, b: usize) -> bool {
         let apart = (self.peak_ns[a] - self.peak_ns[b]).abs();
-        apart.is_nan() || f64::from(apart) <= self.kind.coincidence_gate_ns
+        f64::from(apart) <= self.kind.coincidence_gate_ns
     }
 
     fn root(&mut self, mut pixel: u16) -> u16 {
