@@ -8,6 +8,7 @@ pub mod accidental;
 pub mod camera;
 pub mod curve;
 pub mod kind;
+pub mod muon;
 pub mod noise;
 pub mod readout;
 pub mod sky;

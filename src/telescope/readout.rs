@@ -45,8 +45,8 @@ const CLEANING_SIGMA: f32 = 3.0;
 /// within a gate of each other. Connected and compact patterns draw noise in the pixels with light
 /// and their neighbours only: groups of pure noise further off are the accidental rate's. Majority
 /// draws the highest of the other pixels by order statistics, so it leaves nothing out. Patch sums
-/// add heights at the time of the patch's tallest pixel. At most eight of a pixel's photoelectrons
-/// are tried as its peak.
+/// take the best of the peak times of the patch's pixels. At most eight of a pixel's photoelectrons
+/// are tried as its peak. Peaks gain by the slope of the noise under them to second order.
 ///
 /// # Validity
 /// Against waveforms of every pixel: `verify_trigger_probability_against_waveforms`.
@@ -60,6 +60,7 @@ pub struct Readout<'a> {
     maxima: HeightLaw,
     per_pixel: Vec<Vec<(f32, f32)>>,
     height: Vec<f32>,
+    noise: Vec<f32>,
     peak_ns: Vec<f32>,
     touched: Vec<u16>,
     mark: Vec<u8>,
@@ -107,6 +108,7 @@ impl<'a> Readout<'a> {
             maxima: noise.maxima(2.0 * kind.coincidence_gate_ns),
             per_pixel: vec![Vec::new(); pixels],
             height: vec![0.0; pixels],
+            noise: vec![0.0; pixels],
             peak_ns: vec![0.0; pixels],
             touched: Vec::with_capacity(pixels),
             mark: vec![EMPTY; pixels],
@@ -132,6 +134,7 @@ impl<'a> Readout<'a> {
             let (height, peak) = pulse_peak(&self.per_pixel[pixel], self.sigma_ns);
             (self.height[pixel], self.peak_ns[pixel]) =
                 self.with_noise(Some((height, peak)), time_ns, stream);
+            self.noise[pixel] = self.height[pixel] - height;
         }
         let rings = match self.topology {
             Topology::Connected(1) | Topology::Compact(1) | Topology::Majority(_) => 0,
@@ -149,7 +152,7 @@ impl<'a> Readout<'a> {
             Topology::Connected(need) => self.connected_margin(need),
             Topology::Compact(_) => self.compact_margin(),
             Topology::Majority(need) => self.majority_margin(need, time_ns, stream),
-            Topology::PatchSum(clip_pe) => self.patch_margin(clip_pe as f32),
+            Topology::PatchSum(clip_pe) => self.patch_margin(clip_pe as f32, stream),
         };
         Some(ImageRecord { margin_pe, photoelectrons: sum, time_ns, summary })
     }
@@ -164,6 +167,7 @@ impl<'a> Readout<'a> {
                     self.mark[pixel] = NOISY;
                     (self.height[pixel], self.peak_ns[pixel]) =
                         self.with_noise(None, time_ns, stream);
+                    self.noise[pixel] = self.height[pixel];
                     self.touched.push(neighbour);
                 }
             }
@@ -183,11 +187,14 @@ impl<'a> Readout<'a> {
             return (law.draw(stream), self.noise_time(time_ns, stream));
         };
         let here = signal + self.moment.draw(stream);
-        let elsewhere = if patch { here } else { self.peaks.draw(stream) };
+        if patch {
+            return (here, at);
+        }
+        let elsewhere = self.peaks.draw(stream);
         if elsewhere > here {
             return (elsewhere, self.noise_time(time_ns, stream));
         }
-        (here, at)
+        (here + self.slope_gain(here, 1.0, stream), at)
     }
 
     /// A time within a gate of the image.
@@ -319,10 +326,10 @@ impl<'a> Readout<'a> {
         0.0
     }
 
-    /// The largest sum of clipped heights over a pixel and its neighbours.
-    fn patch_margin(&self, clip_pe: f32) -> f32 {
+    /// The largest sum of clipped heights over a pixel and its neighbours, at the peak time of one
+    /// of its lit pixels.
+    fn patch_margin(&self, clip_pe: f32, stream: &mut Stream) -> f32 {
         let kind = self.kind;
-        let scale = -0.5 / (self.sigma_ns * self.sigma_ns);
         let mut margin = 0.0_f32;
         for &centre in &self.touched {
             let near = kind.camera.neighbours(usize::from(centre));
@@ -330,21 +337,30 @@ impl<'a> Readout<'a> {
             if all().any(|p| self.mark[p] == EMPTY) {
                 continue;
             }
-            let lit = all().filter(|&p| self.mark[p] == LIT);
-            let Some(tallest) = lit.max_by(|a, b| self.height[*a].total_cmp(&self.height[*b]))
-            else {
-                continue;
-            };
-            let at = self.peak_ns[tallest];
-            let sum: f32 = all()
-                .map(|p| {
-                    let late = if self.mark[p] == LIT { self.peak_ns[p] - at } else { 0.0 };
-                    (self.height[p] * (scale * late * late).exp()).min(clip_pe)
-                })
-                .sum();
-            margin = margin.max(sum);
+            let mut best = f32::NEG_INFINITY;
+            for moment in all().filter(|&p| self.mark[p] == LIT).map(|p| self.peak_ns[p]) {
+                let height = |p: usize| {
+                    let light = self.per_pixel[p].as_slice();
+                    self.noise[p] + pulse_sum(light, moment, self.sigma_ns)
+                };
+                best = best.max(all().map(|p| height(p).min(clip_pe)).sum());
+            }
+            if best > 0.0 {
+                let free = all().filter(|&p| self.height[p] < clip_pe).count();
+                margin = margin.max(best + self.slope_gain(best, free as f32, stream));
+            }
         }
         margin
+    }
+
+    /// What a peak of `height` gains by noise that slopes under it: for a gaussian top of curvature
+    /// height / sigma^2 and a noise slope of variance n rms^2 / (2 sigma^2), n rms^2 z^2 / (4 height).
+    fn slope_gain(&self, height: f32, pixels: f32, stream: &mut Stream) -> f32 {
+        let variance = pixels * self.noise_rms * self.noise_rms;
+        if height * height <= variance {
+            return 0.0;
+        }
+        variance * (stream.normal() as f32).powi(2) / (4.0 * height)
     }
 
     /// Whether two pixels peak within the gate.
@@ -396,16 +412,19 @@ pub fn noise_rms_pe(kind: &TelescopeKind, sky_per_ns: f64) -> f64 {
 /// The highest sum of pulses at one of (at most eight of) their own times, and that time.
 fn pulse_peak(pulses: &[(f32, f32)], sigma_ns: f32) -> (f32, f32) {
     let stride = pulses.len().div_ceil(8).max(1);
-    let scale = -0.5 / (sigma_ns * sigma_ns);
     let mut best = (0.0, pulses.first().map_or(0.0, |pulse| pulse.0));
     for candidate in pulses.iter().step_by(stride) {
-        let height: f32 = pulses
-            .iter()
-            .map(|(time, weight)| weight * (scale * (time - candidate.0).powi(2)).exp())
-            .sum();
+        let height = pulse_sum(pulses, candidate.0, sigma_ns);
         if height > best.0 {
             best = (height, candidate.0);
         }
     }
     best
+}
+
+/// Sum of pulses (time, peak) at a moment.
+#[inline]
+fn pulse_sum(pulses: &[(f32, f32)], moment_ns: f32, sigma_ns: f32) -> f32 {
+    let scale = -0.5 / (sigma_ns * sigma_ns);
+    pulses.iter().map(|(time, peak)| peak * (scale * (time - moment_ns).powi(2)).exp()).sum()
 }

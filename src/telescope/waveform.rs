@@ -18,8 +18,6 @@ pub struct Waveforms<'a> {
     kind: &'a TelescopeKind,
     samples: usize,
     heights: Vec<f32>,
-    last_on: Vec<f32>,
-    compact: Vec<Vec<u16>>,
 }
 
 impl<'a> Waveforms<'a> {
@@ -27,8 +25,7 @@ impl<'a> Waveforms<'a> {
     pub fn new(kind: &'a TelescopeKind, duration_ns: f32) -> Self {
         let samples = (duration_ns / SAMPLE_NS) as usize;
         let pixels = kind.camera.pixels.len();
-        let (heights, last_on) = (vec![0.0; samples * pixels], vec![f32::NEG_INFINITY; pixels]);
-        Self { kind, samples, heights, last_on, compact: Vec::new() }
+        Self { kind, samples, heights: vec![0.0; samples * pixels] }
     }
 
     /// Fills every pixel with sky noise of a rate and removes its mean.
@@ -85,36 +82,21 @@ impl<'a> Waveforms<'a> {
     ///
     /// Every upward crossing starts a logic pulse as long as the gate; the pattern fires while the
     /// logic pulses of its pixels overlap. A patch sum crosses the threshold itself.
-    pub fn triggers(&mut self, topology: Topology, threshold_pe: f32) -> usize {
+    pub fn triggers(&self, topology: Topology, threshold_pe: f32) -> usize {
         if let Topology::PatchSum(clip_pe) = topology {
             return self.patch_triggers(clip_pe as f32, threshold_pe);
         }
-        if let (Topology::Compact(size), true) = (topology, self.compact.is_empty()) {
-            self.compact = compact_groups(&self.kind.camera, size);
-        }
-        let gate = self.kind.coincidence_gate_ns as f32;
-        let mut rises: Vec<(usize, usize)> = Vec::new();
+        let mut rises: Vec<(f64, usize)> = Vec::new();
         for pixel in 0..self.kind.camera.pixels.len() {
             let wave = self.pixel(pixel);
             for sample in 1..wave.len() {
                 if wave[sample] > threshold_pe && wave[sample - 1] <= threshold_pe {
-                    rises.push((sample, pixel));
+                    rises.push((sample as f64 * f64::from(SAMPLE_NS), pixel));
                 }
             }
         }
-        rises.sort_unstable();
-        self.last_on.fill(f32::NEG_INFINITY);
-        let (mut count, mut fired_until) = (0, f32::NEG_INFINITY);
-        for (sample, pixel) in rises {
-            let now = sample as f32 * SAMPLE_NS;
-            self.last_on[pixel] = now;
-            let on = |other: usize| now - self.last_on[other] < gate;
-            if now >= fired_until && fires(&self.kind.camera, topology, &self.compact, pixel, on) {
-                count += 1;
-                fired_until = now + gate;
-            }
-        }
-        count
+        rises.sort_unstable_by(|a, b| a.0.total_cmp(&b.0).then(a.1.cmp(&b.1)));
+        coincidences(self.kind, topology, &rises)
     }
 
     fn patch_triggers(&self, clip_pe: f32, threshold_pe: f32) -> usize {
@@ -133,6 +115,28 @@ impl<'a> Waveforms<'a> {
         });
         patches.sum()
     }
+}
+
+/// How often logic pulses that start at (time in ns, pixel), sorted by time, make the pattern.
+///
+/// After a trigger the pattern rests for one gate.
+pub fn coincidences(kind: &TelescopeKind, topology: Topology, rises: &[(f64, usize)]) -> usize {
+    let compact = match topology {
+        Topology::Compact(size) => compact_groups(&kind.camera, size),
+        _ => Vec::new(),
+    };
+    let gate = kind.coincidence_gate_ns;
+    let mut last_on = vec![f64::NEG_INFINITY; kind.camera.pixels.len()];
+    let (mut count, mut fired_until) = (0, f64::NEG_INFINITY);
+    for &(now, pixel) in rises {
+        last_on[pixel] = now;
+        let on = |other: usize| now - last_on[other] < gate;
+        if now >= fired_until && fires(&kind.camera, topology, &compact, pixel, on) {
+            count += 1;
+            fired_until = now + gate;
+        }
+    }
+    count
 }
 
 fn rises(wave: &[f32], threshold: f32) -> usize {

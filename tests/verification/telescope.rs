@@ -5,7 +5,7 @@ use nightpool::telescope::accidental::{
     array_rate_hz, array_slot_rate_hz, connected_groups, topology_rate_hz,
 };
 use nightpool::telescope::trigger::compact_groups;
-use nightpool::telescope::waveform::Waveforms;
+use nightpool::telescope::waveform::{Waveforms, coincidences};
 use nightpool::telescope::{
     Camera, Curve, Noise, PixelShape, Quantum, Readout, TelescopeKind, Threshold, Topology,
 };
@@ -42,7 +42,7 @@ fn seven() -> TelescopeKind {
 fn verify_accidental_rates_against_waveforms() {
     let kind = seven();
     assert_eq!(kind.camera.pixels.len(), 7);
-    let (sky, block_ns, blocks) = (0.16, 100_000.0_f32, 300);
+    let (sky, block_ns, blocks) = (0.16, 100_000.0_f32, 200);
     let thresholds = [1.5_f32, 2.0, 3.0, 4.0, 5.0, 6.0, 7.0, 8.0];
     let sums = [4.0_f32, 6.0, 8.0, 10.0, 12.0, 13.0];
     let topologies =
@@ -66,22 +66,66 @@ fn verify_accidental_rates_against_waveforms() {
     }
     let seconds = f64::from(block_ns) * 1e-9 * blocks as f64;
     let noise = Noise::of_pixel(&kind, sky);
-    for (level, &threshold) in thresholds.iter().enumerate() {
-        let measured = pixel[level] as f64 / (7.0 * seconds);
+    let enough = |count: usize| count >= 40;
+    for (&count, &threshold) in pixel.iter().zip(&thresholds).filter(|(c, _)| enough(**c)) {
+        let measured = count as f64 / (7.0 * seconds);
         let ratio = noise.crossing_rate_hz(f64::from(threshold)) / measured;
-        println!("pixel {threshold} pe: {measured:.3e} Hz, ratio {ratio:.3} n {}", pixel[level]);
+        let allowed = 0.03 + 3.0 / (count as f64).sqrt();
+        assert!((ratio - 1.0).abs() < allowed, "pixel at {threshold}: {ratio} of {measured} Hz");
     }
+    assert!(pixel[0] > 10_000 * pixel[6] && enough(pixel[6]), "four decades: {pixel:?}");
     for (topology, counts) in topologies.iter().zip(&groups) {
-        for (level, &threshold) in thresholds.iter().enumerate() {
-            let measured = counts[level] as f64 / seconds;
-            let expected = topology_rate_hz(&kind, *topology, sky, f64::from(threshold));
-            println!("{topology:?} {threshold}: {measured:.3e} ratio {:.3} n {}", expected / measured, counts[level]);
+        for (&count, &threshold) in counts.iter().zip(&thresholds).filter(|(c, _)| enough(**c)) {
+            let threshold = f64::from(threshold);
+            let expected = topology_rate_hz(&kind, *topology, sky, threshold);
+            let ratio = expected * seconds / count as f64;
+            let error = 3.0 / (count as f64).sqrt();
+            // The sum over groups counts overlaps twice and ignores the rest after a trigger: an
+            // upper bound, off by the occupancy of the gate times the pixels that may join.
+            let busy = noise.crossing_rate_hz(threshold) * kind.coincidence_gate_ns * 1e-9;
+            let most = 1.0 + 7.0 * busy + error;
+            assert!(ratio > 0.98 - error, "{topology:?} at {threshold}: {ratio}");
+            assert!(ratio < most || busy > 0.05, "{topology:?} at {threshold}: {ratio} > {most}");
         }
     }
-    for (count, &threshold) in patch.iter().zip(&sums) {
-        let measured = *count as f64 / seconds;
-        let expected = topology_rate_hz(&kind, Topology::PatchSum(3.0), sky, f64::from(threshold));
-        println!("patch {threshold}: {measured:.3e} ratio {:.3} n {count}", expected / measured);
+    for (&count, &threshold) in patch.iter().zip(&sums).filter(|(c, _)| enough(**c)) {
+        let topology = Topology::PatchSum(3.0);
+        let expected = topology_rate_hz(&kind, topology, sky, f64::from(threshold));
+        let ratio = expected * seconds / count as f64;
+        let allowed = 0.03 + 3.0 / (count as f64).sqrt();
+        assert!((ratio - 1.0).abs() < allowed, "patch at {threshold}: {ratio}");
+    }
+}
+
+/// Logic pulses at random against groups x n R^n w^(n-1), over four decades of trigger rate.
+#[test]
+fn verify_coincidence_algebra_over_four_decades() {
+    let kind = seven();
+    for (topology, groups, n) in [
+        (Topology::Connected(2), 12.0, 2_i32),
+        (Topology::Connected(3), 21.0, 3),
+        (Topology::Compact(3), 6.0, 3),
+        (Topology::Majority(3), 35.0, 3),
+        (Topology::Majority(4), 35.0, 4),
+    ] {
+        let gate = kind.coincidence_gate_ns * 1e-9;
+        for decade in 0..5 {
+            let wanted = 10.0_f64.powi(decade + 1);
+            let rate = (wanted / (groups * f64::from(n) * gate.powi(n - 1))).powf(1.0 / f64::from(n));
+            let mut stream = Stream::keyed(3, Stage::Noise, &[decade as u64, n as u64, groups as u64]);
+            let (mut time, mut count, target) = (0.0, 0, 400.0);
+            let end = 1e9 * target / wanted;
+            let mut rises = Vec::new();
+            while time < end {
+                time += 1e9 * stream.exponential() / (7.0 * rate);
+                rises.push((time, (stream.uniform() * 7.0) as usize));
+            }
+            count += coincidences(&kind, topology, &rises);
+            let ratio = count as f64 / target;
+            // Four standard errors, and the overlaps between groups: see the waveform test.
+            let low = 1.0 - 0.2 - 7.0 * rate * gate;
+            assert!(ratio > low && ratio < 1.2, "{topology:?}, {wanted} Hz: {ratio}");
+        }
     }
 }
 
@@ -89,16 +133,18 @@ fn verify_accidental_rates_against_waveforms() {
 #[test]
 fn verify_trigger_probability_against_waveforms() {
     let kind = kind(PixelShape::Hexagonal, 0.2, 1.1);
-    let trials = 4_000;
+    let trials = 3_000;
     let sky = 0.16;
+    let mut compared = 0;
     for topology in
         [Topology::Connected(2), Topology::Connected(3), Topology::Compact(3), Topology::Majority(3), Topology::PatchSum(6.0)]
     {
         for light in [12_usize, 25, 60] {
-            let base = if matches!(topology, Topology::PatchSum(_)) { 2.0 } else { 1.0 };
+            let base = if matches!(topology, Topology::PatchSum(_)) { 3.0 } else { 1.0 };
             let thresholds: Vec<f32> =
                 [1.5_f32, 2.5, 3.5, 4.5, 6.0].iter().map(|t| t * base * (light as f32 / 25.0).sqrt()).collect();
-            let (mut fast, mut slow, mut dark) = ([0_f64; 5], [0_f64; 5], [0_f64; 5]);
+            let (mut slow, mut dark) = ([0_f64; 5], [0_f64; 5]);
+            let mut margins = Vec::new();
             let mut readout = Readout::with_topology(&kind, sky, topology);
             let mut waves = Waveforms::new(&kind, 60.0);
             let mut quanta = Vec::new();
@@ -113,7 +159,7 @@ fn verify_trigger_probability_against_waveforms() {
                         weight: 1.0,
                     });
                 }
-                let margin = readout.image(&quanta, &mut stream).map_or(0.0, |i| i.margin_pe);
+                margins.push(readout.image(&quanta, &mut stream).map_or(0.0, |i| i.margin_pe));
                 waves.fill_with_noise(sky, &mut stream);
                 for (level, &threshold) in thresholds.iter().enumerate() {
                     dark[level] += f64::from(waves.triggers(topology, threshold) > 0);
@@ -125,17 +171,213 @@ fn verify_trigger_probability_against_waveforms() {
                     }
                 }
                 for (level, &threshold) in thresholds.iter().enumerate() {
-                    fast[level] += f64::from(margin > threshold);
                     slow[level] += f64::from(waves.triggers(topology, threshold) > 0);
                 }
             }
-            for level in 0..5 {
-                let n = trials as f64;
-                println!(
-                    "{topology:?} light {light} thr {:.2}: fast {:.4} slow {:.4} dark {:.4}",
-                    thresholds[level], fast[level] / n, slow[level] / n, dark[level] / n
-                );
+            margins.sort_unstable_by(|a, b| b.total_cmp(a));
+            for (level, &threshold) in thresholds.iter().enumerate() {
+                let share = slow[level] / trials as f64;
+                if dark[level] > 0.01 * slow[level] || !(0.03..0.97).contains(&share) {
+                    continue;
+                }
+                // The fast threshold that triggers as often.
+                let equal = margins[slow[level] as usize];
+                let shift = equal / threshold - 1.0;
+                println!("{topology:?} light {light} at {threshold:.2}: P {share:.3}, shift {shift:+.3}");
+                assert!(shift.abs() < 0.03, "{topology:?}, {light} pe, {threshold}: {shift}");
+                compared += 1;
             }
+        }
+    }
+    assert!(compared >= 20, "{compared}");
+}
+
+/// The margin is the highest threshold at which the pattern fires: without noise and with all light
+/// at one time it must equal a scan over thresholds of the pixels lit above each.
+#[test]
+fn verify_margin_against_threshold_scan() {
+    for shape in [PixelShape::Hexagonal, PixelShape::Square] {
+        let mut kind = kind(shape, 0.2, 2.0);
+        kind.pulse_spread = 0.0;
+        let topologies = [
+            Topology::Connected(1),
+            Topology::Connected(3),
+            Topology::Connected(5),
+            Topology::Compact(2),
+            Topology::Compact(3),
+            Topology::Compact(4),
+            Topology::Majority(2),
+            Topology::Majority(6),
+            Topology::PatchSum(4.0),
+        ];
+        for topology in topologies {
+            let mut readout = Readout::with_topology(&kind, 1e-9, topology);
+            for image in 0..100 {
+                let mut stream = Stream::keyed(2, Stage::Image, &[image]);
+                let mut content = vec![0.0_f32; kind.camera.pixels.len()];
+                let mut quanta = Vec::new();
+                for _ in 0..60 {
+                    let (x, y) = (0.3 * stream.normal() as f32, 0.2 * stream.normal() as f32);
+                    if let Some(pixel) = kind.camera.pixel(x, y) {
+                        content[pixel] += 1.0;
+                        quanta.push(Quantum { x_deg: x, y_deg: y, time_ns: 10.0, weight: 1.0 });
+                    }
+                }
+                let margin = readout.image(&quanta, &mut stream).unwrap().margin_pe;
+                let scan = scanned_margin(&kind, topology, &content);
+                assert!((margin - scan).abs() < 0.06, "{shape:?} {topology:?}: {margin} {scan}");
+            }
+        }
+    }
+}
+
+/// The highest threshold, from the top down, at which pulses at one time make the pattern.
+fn scanned_margin(kind: &TelescopeKind, topology: Topology, content: &[f32]) -> f32 {
+    if let Topology::PatchSum(clip) = topology {
+        let sum = |centre: usize| {
+            let near = kind.camera.neighbours(centre).iter().map(|&p| usize::from(p));
+            near.chain([centre]).map(|p| content[p].min(clip as f32)).sum::<f32>()
+        };
+        return (0..content.len()).map(sum).fold(0.0, f32::max);
+    }
+    let fires = |threshold: f32| {
+        let lit = content.iter().enumerate().filter(|(_, height)| **height > threshold);
+        let rises: Vec<(f64, usize)> = lit.map(|(pixel, _)| (0.0, pixel)).collect();
+        coincidences(kind, topology, &rises) > 0
+    };
+    let highest = (0..600).rev().map(|step| step as f32 * 0.1 + 0.05).find(|&level| fires(level));
+    highest.map_or(0.0, |level| level + 0.05)
+}
+
+/// Fixed numbers of connected hexagons per cell of a large lattice: 1, 3, 11, 44 (fixed
+/// polyhexes), and of squares 1, 2, 6, 19 (fixed polyominoes).
+#[test]
+fn verify_group_counts_against_lattice_animals() {
+    let counts = [(PixelShape::Hexagonal, [1.0, 3.0, 11.0, 44.0]), (PixelShape::Square, [1.0, 2.0, 6.0, 19.0])];
+    for (shape, animals) in counts {
+        let (small, large) = (kind(shape, 0.1, 4.0).camera, kind(shape, 0.1, 5.0).camera);
+        for (size, animal) in (1..=4).zip(animals) {
+            // Groups = animals x pixels - edge loss; the loss grows with the circumference only.
+            let loss = |c: &Camera| animal * c.pixels.len() as f64 - connected_groups(c, size);
+            let ratio = if size == 1 { 1.25 } else { loss(&large) / loss(&small) };
+            assert!((ratio - 1.25).abs() < 0.08, "{shape:?} {size}: {ratio}");
+        }
+        let triples = compact_groups(&large, 3).len() as f64 / large.pixels.len() as f64;
+        let per_pixel = if shape == PixelShape::Hexagonal { 2.0 } else { 4.0 };
+        assert!((triples / per_pixel - 1.0).abs() < 0.1, "{shape:?}: {triples}");
+    }
+}
+
+#[test]
+fn verify_array_rate_is_the_symmetric_polynomial() {
+    let rates = [100.0, 200.0, 300.0, 400.0];
+    let tau: f64 = 40e-9;
+    let threefold = 100.0 * 200.0 * (300.0 + 400.0) + 300.0 * 400.0 * (100.0 + 200.0);
+    let window = array_rate_hz(&rates, 3, 40.0);
+    assert!((window / (3.0 * threefold * tau * tau) - 1.0).abs() < 1e-12);
+    assert!((array_slot_rate_hz(&rates, 3, 40.0) * 3.0 / window - 1.0).abs() < 1e-12);
+}
+
+/// A point off axis falls into its pixel; a disc centred on the edge is half lost; one pixel works.
+#[test]
+fn verify_point_source_half_image_and_one_pixel() {
+    let camera = kind(PixelShape::Hexagonal, 0.05, 5.3);
+    assert!(camera.camera.pixels.len() > 9_500, "{}", camera.camera.pixels.len());
+    let mut readout = Readout::new(&camera, 1e-6);
+    let mut stream = Stream::keyed(1, Stage::Image, &[1]);
+    let quantum = |x_deg: f32, y_deg: f32| Quantum { x_deg, y_deg, time_ns: 0.0, weight: 1.0 };
+    let point = vec![quantum(1.3, -0.9); 100];
+    let record = readout.image(&point, &mut stream).unwrap();
+    let [x, y] = record.summary.centroid_deg;
+    assert!((x - 1.3).hypot(y + 0.9) < 0.05 / 3.0_f32.sqrt(), "{x} {y}");
+    assert_eq!(record.photoelectrons, 100.0);
+    assert!((record.margin_pe / 100.0 - 1.0).abs() < 0.2, "{}", record.margin_pe);
+    // A disc centred on the edge of the circle that has the camera's area, averaged over azimuth so
+    // that the ragged edge of the pixels cancels; expected: the part inside that circle.
+    let area = camera.camera.pixels.len() as f64 * 0.75_f64.sqrt() * 0.05 * 0.05;
+    let edge = (area / core::f64::consts::PI).sqrt();
+    let (mut seen, mut inside, mut thrown) = (0.0, 0.0, 0.0);
+    for step in 0..36 {
+        let (sin, cos) = (10.0 * f64::from(step)).to_radians().sin_cos();
+        let mut disc = Vec::new();
+        for _ in 0..2_000 {
+            let (c, s) = stream.direction();
+            let radius = 0.3 * stream.uniform().sqrt();
+            let (x, y) = (edge * cos + radius * c, edge * sin + radius * s);
+            inside += f64::from(x.hypot(y) < edge);
+            disc.push(quantum(x as f32, y as f32));
+            thrown += 1.0;
+        }
+        seen += f64::from(readout.image(&disc, &mut stream).unwrap().photoelectrons);
+    }
+    assert!((0.45..0.5).contains(&(inside / thrown)));
+    assert!((seen - inside).abs() / thrown < 0.01, "{seen} {inside} of {thrown}");
+    assert!(readout.image(&[quantum(9.0, 0.0)], &mut stream).is_none());
+    let one = kind(PixelShape::Square, 1.0, 1.0);
+    let mut readout = Readout::new(&one, 1e-6);
+    let record = readout.image(&vec![quantum(0.1, 0.1); 50], &mut stream).unwrap();
+    assert!((record.margin_pe / 50.0 - 1.0).abs() < 0.3, "{}", record.margin_pe);
+    assert_eq!(record.summary.edge_fraction, 1.0);
+}
+
+/// A muon's photons traced to a mirror and into the camera, against the ring formula: on axis and
+/// with the ring cut by the mirror's rim.
+#[test]
+fn verify_muon_ring_against_traced_photons() {
+    use nightpool::telescope::muon::{chord_m, ring_photoelectrons_per_rad};
+    let kind = kind(PixelShape::Hexagonal, 0.1, 4.0);
+    let (theta, radius) = (1.2_f64.to_radians(), 6.0);
+    // Efficiency 0.1 between 300 and 600 nm.
+    let inverse_band = 0.1 * (1.0 / 300e-9 - 1.0 / 600e-9);
+    for impact in [0.0, 3.0, 8.0] {
+        let mut stream = Stream::keyed(4, Stage::Image, &[impact as u64]);
+        let height = 2.0 * 1.2 * radius / theta.tan() + 8.0 / theta.tan();
+        let per_m = core::f64::consts::TAU * nightpool::consts::FINE_STRUCTURE
+            * theta.sin().powi(2) * inverse_band;
+        let muons = 400;
+        let mut quanta = Vec::new();
+        for _ in 0..muons {
+            for _ in 0..stream.poisson(per_m * height) {
+                let above = height * stream.uniform();
+                let (cos, sin) = stream.direction();
+                let reach = above * theta.tan();
+                // The muon falls vertically at x = -impact; phi = 0 looks at the mirror's centre.
+                let (x, y) = (-impact + reach * cos, reach * sin);
+                if x.hypot(y) < radius {
+                    let ring = theta.to_degrees();
+                    quanta.push(Quantum {
+                        x_deg: (ring * cos) as f32,
+                        y_deg: (ring * sin) as f32,
+                        time_ns: 0.0,
+                        weight: 1.0,
+                    });
+                }
+            }
+        }
+        for sector in 0..6 {
+            let (from, to) = (f64::from(sector) * 60.0 - 30.0, f64::from(sector) * 60.0 + 30.0);
+            let expected = nightpool::numerics::quadrature::integrate(from, to, 40, |phi| {
+                let chord = chord_m(radius, impact, phi.to_radians());
+                ring_photoelectrons_per_rad(theta, chord, inverse_band)
+            })
+            .to_radians()
+                * f64::from(muons);
+            let seen = quanta
+                .iter()
+                .filter(|q| {
+                    let phi = f64::from(q.y_deg.atan2(q.x_deg)).to_degrees().rem_euclid(360.0);
+                    phi >= from && phi < to || phi - 360.0 >= from && phi - 360.0 < to
+                })
+                .count() as f64;
+            let error = 4.0 * expected.sqrt() + 0.005 * expected + 1e-9;
+            assert!((seen - expected).abs() < error, "{impact} m, {sector}: {seen} {expected}");
+        }
+        if impact == 0.0 {
+            let record = Readout::new(&kind, 1e-6).image(&quanta, &mut stream).unwrap();
+            // Of a thin ring each RMS is radius / sqrt(2); pixels add pitch^2 5/72 in square.
+            let ring = (1.44_f64 / 2.0 + 0.01 * 5.0 / 72.0).sqrt();
+            let length = f64::from(record.summary.length_deg);
+            assert!((length / ring - 1.0).abs() < 0.02, "{length} {ring}");
         }
     }
 }
