@@ -87,7 +87,9 @@ pub fn topology_rate_hz(
 ) -> f64 {
     let camera = &kind.camera;
     let (groups, pixels) = match topology {
-        Topology::PatchSum(clip_pe) => return patch_rate_hz(kind, sky_per_ns, clip_pe, threshold_pe),
+        Topology::PatchSum(clip_pe) => {
+            return patch_rate_hz(kind, sky_per_ns, clip_pe, threshold_pe);
+        }
         Topology::Connected(n) => (connected_groups(camera, n), n),
         Topology::Compact(n) => (compact_groups(camera, n).len() as f64, n),
         Topology::Majority(n) => (combinations(camera.pixels.len(), n), n),

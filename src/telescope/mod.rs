@@ -18,8 +18,8 @@ pub mod waveform;
 
 pub use camera::{Camera, PixelShape};
 pub use curve::{Curve, CurveError};
-pub use noise::Noise;
 pub use kind::{KindError, TelescopeKind, Threshold};
+pub use noise::Noise;
 pub use readout::{ImageRecord, Quantum, Readout};
 pub use sky::{Brightness, NightSky};
 pub use summary::ImageSummary;

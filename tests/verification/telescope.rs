@@ -45,8 +45,7 @@ fn verify_accidental_rates_against_waveforms() {
     let (sky, block_ns, blocks) = (0.16, 100_000.0_f32, 200);
     let thresholds = [1.5_f32, 2.0, 3.0, 4.0, 5.0, 6.0, 7.0, 8.0];
     let sums = [4.0_f32, 6.0, 8.0, 10.0, 12.0, 13.0];
-    let topologies =
-        [Topology::Connected(2), Topology::Majority(3), Topology::Compact(3)];
+    let topologies = [Topology::Connected(2), Topology::Majority(3), Topology::Compact(3)];
     let mut pixel = [0_usize; 8];
     let mut groups = [[0_usize; 8]; 3];
     let mut patch = [0_usize; 6];
@@ -111,8 +110,10 @@ fn verify_coincidence_algebra_over_four_decades() {
         let gate = kind.coincidence_gate_ns * 1e-9;
         for decade in 0..5 {
             let wanted = 10.0_f64.powi(decade + 1);
-            let rate = (wanted / (groups * f64::from(n) * gate.powi(n - 1))).powf(1.0 / f64::from(n));
-            let mut stream = Stream::keyed(3, Stage::Noise, &[decade as u64, n as u64, groups as u64]);
+            let rate =
+                (wanted / (groups * f64::from(n) * gate.powi(n - 1))).powf(1.0 / f64::from(n));
+            let mut stream =
+                Stream::keyed(3, Stage::Noise, &[decade as u64, n as u64, groups as u64]);
             let (mut time, mut count, target) = (0.0, 0, 400.0);
             let end = 1e9 * target / wanted;
             let mut rises = Vec::new();
@@ -136,13 +137,19 @@ fn verify_trigger_probability_against_waveforms() {
     let trials = 3_000;
     let sky = 0.16;
     let mut compared = 0;
-    for topology in
-        [Topology::Connected(2), Topology::Connected(3), Topology::Compact(3), Topology::Majority(3), Topology::PatchSum(6.0)]
-    {
+    for topology in [
+        Topology::Connected(2),
+        Topology::Connected(3),
+        Topology::Compact(3),
+        Topology::Majority(3),
+        Topology::PatchSum(6.0),
+    ] {
         for light in [12_usize, 25, 60] {
             let base = if matches!(topology, Topology::PatchSum(_)) { 3.0 } else { 1.0 };
-            let thresholds: Vec<f32> =
-                [1.5_f32, 2.5, 3.5, 4.5, 6.0].iter().map(|t| t * base * (light as f32 / 25.0).sqrt()).collect();
+            let thresholds: Vec<f32> = [1.5_f32, 2.5, 3.5, 4.5, 6.0]
+                .iter()
+                .map(|t| t * base * (light as f32 / 25.0).sqrt())
+                .collect();
             let (mut slow, mut dark) = ([0_f64; 5], [0_f64; 5]);
             let mut margins = Vec::new();
             let mut readout = Readout::with_topology(&kind, sky, topology);
@@ -183,7 +190,6 @@ fn verify_trigger_probability_against_waveforms() {
                 // The fast threshold that triggers as often.
                 let equal = margins[slow[level] as usize];
                 let shift = equal / threshold - 1.0;
-                println!("{topology:?} light {light} at {threshold:.2}: P {share:.3}, shift {shift:+.3}");
                 assert!(shift.abs() < 0.03, "{topology:?}, {light} pe, {threshold}: {shift}");
                 compared += 1;
             }
@@ -253,7 +259,10 @@ fn scanned_margin(kind: &TelescopeKind, topology: Topology, content: &[f32]) -> 
 /// polyhexes), and of squares 1, 2, 6, 19 (fixed polyominoes).
 #[test]
 fn verify_group_counts_against_lattice_animals() {
-    let counts = [(PixelShape::Hexagonal, [1.0, 3.0, 11.0, 44.0]), (PixelShape::Square, [1.0, 2.0, 6.0, 19.0])];
+    let counts = [
+        (PixelShape::Hexagonal, [1.0, 3.0, 11.0, 44.0]),
+        (PixelShape::Square, [1.0, 2.0, 6.0, 19.0]),
+    ];
     for (shape, animals) in counts {
         let (small, large) = (kind(shape, 0.1, 4.0).camera, kind(shape, 0.1, 5.0).camera);
         for (size, animal) in (1..=4).zip(animals) {
@@ -332,8 +341,10 @@ fn verify_muon_ring_against_traced_photons() {
     for impact in [0.0, 3.0, 8.0] {
         let mut stream = Stream::keyed(4, Stage::Image, &[impact as u64]);
         let height = 2.0 * 1.2 * radius / theta.tan() + 8.0 / theta.tan();
-        let per_m = core::f64::consts::TAU * nightpool::consts::FINE_STRUCTURE
-            * theta.sin().powi(2) * inverse_band;
+        let per_m = core::f64::consts::TAU
+            * nightpool::consts::FINE_STRUCTURE
+            * theta.sin().powi(2)
+            * inverse_band;
         let muons = 400;
         let mut quanta = Vec::new();
         for _ in 0..muons {
