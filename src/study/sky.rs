@@ -3,6 +3,7 @@
 use std::path::Path;
 
 use crate::atmosphere::Atmosphere;
+use crate::rates;
 use crate::shower::Species;
 use crate::telescope::{Brightness, NightSky, TelescopeKind};
 
@@ -123,20 +124,37 @@ pub(super) fn backgrounds(root: &Section<'_>) -> Result<Vec<Background>, StudyEr
         if species == Species::Gamma || backgrounds.iter().any(|known| known.species == species) {
             return Err(section.wrong("primary", "write each background once, and no gammas"));
         }
-        let named = Spectrum::Named(species.to_string());
-        let spectrum = spectrum(&section)?.unwrap_or(named);
+        let spectrum = match spectrum(&section)? {
+            Some(spectrum) => spectrum,
+            None => published(species).map_err(|problem| section.wrong("primary", problem))?,
+        };
         section.finish()?;
         backgrounds.push(Background { species, spectrum });
     }
     if backgrounds.is_empty() {
         let species = Species::Proton;
-        backgrounds.push(Background { species, spectrum: Spectrum::Named(species.to_string()) });
+        let spectrum = Spectrum::Named(species.to_string());
+        backgrounds.push(Background { species, spectrum });
     }
     Ok(backgrounds)
 }
 
+/// The built-in spectrum of a species.
+fn published(species: Species) -> Result<Spectrum, String> {
+    let name = species.to_string();
+    match rates::Spectrum::named(&name) {
+        Ok(_) => Ok(Spectrum::Named(name)),
+        Err(_) => Err("has no built-in spectrum; write flux_m2_s_tev, pivot_tev, index".into()),
+    }
+}
+
 fn spectrum(section: &Section<'_>) -> Result<Option<Spectrum>, StudyError> {
     if let Some(name) = section.text_if_any("spectrum")? {
+        if section.has("flux_m2_s_tev") {
+            return Err(section.wrong("spectrum", "write either spectrum or flux_m2_s_tev"));
+        }
+        let known = rates::Spectrum::named(name);
+        known.map_err(|error| section.wrong("spectrum", error.to_string()))?;
         return Ok(Some(Spectrum::Named(name.to_owned())));
     }
     let flux = limits(1e-20, 1e6, "1/(m2 s TeV), per sr if diffuse");

@@ -79,8 +79,8 @@ fn by_energy(title: &str, y_name: &str, decades: f64, curves: &[Curve]) -> Strin
         legend(canvas, 1860.0, 80.0, &names);
         if curves.len() > SHOWN {
             let (y, rest) = (80.0 + 76.0 * SHOWN as f64, curves.len() - SHOWN);
-            canvas.line(&[(1860.0, y), (1990.0, y)], PALE, 4);
-            canvas.text(&format!("{rest} further layouts"), (2010.0, y), TICK_FONT, Side::Left);
+            canvas.line(&[(1860.0, y), (2050.0, y)], PALE, 4);
+            canvas.text(&format!("{rest} further layouts"), (2070.0, y), TICK_FONT, Side::Left);
         }
     })
 }
@@ -125,12 +125,12 @@ pub(super) fn draw_curve(
 
 /// Names beside samples of their curves, right of the data.
 pub(super) fn legend(canvas: &Canvas<'_>, left: f64, top: f64, names: &[&str]) {
-    let room = ((f64::from(WIDTH) - left - 160.0) / (0.56 * f64::from(TICK_FONT))) as usize;
+    let room = ((f64::from(WIDTH) - left - 220.0) / (0.56 * f64::from(TICK_FONT))) as usize;
     for (index, name) in names.iter().enumerate() {
         let (y, look) = (top + 76.0 * index as f64, look(index));
-        canvas.dashed(&[(left, y), (left + 130.0, y)], look.dash, look.colour, LINE);
-        canvas.marker((left + 65.0, y), 15.0, look);
-        canvas.text(&shortened(name, room), (left + 150.0, y), TICK_FONT, Side::Left);
+        canvas.dashed(&[(left, y), (left + 190.0, y)], look.dash, look.colour, LINE);
+        canvas.marker((left + 95.0, y), 15.0, look);
+        canvas.text(&shortened(name, room), (left + 210.0, y), TICK_FONT, Side::Left);
     }
 }
 

@@ -10,8 +10,8 @@ use crate::report::result::{LayoutMap, PlanResult};
 
 const COLUMNS: usize = 3;
 const MOST: usize = 9;
-const LEFT: f64 = 250.0;
-const SIDE: f64 = 740.0;
+const LEFT: f64 = 290.0;
+const SIDE: f64 = 724.0;
 const GAP: f64 = 60.0;
 const HEADING: f64 = 84.0;
 
