@@ -7,6 +7,9 @@ use std::path::{Path, PathBuf};
 use sha2::{Digest, Sha256};
 use toml::de::DeTable;
 
+use crate::response::CORES_PER_SHOWER;
+use crate::telescope::TelescopeKind;
+
 use super::error::StudyError;
 use super::reader::{Document, Section, limits};
 use super::resolved::{Budget, Engine, Ranking, Study};
@@ -14,8 +17,9 @@ use super::{candidates, ground, instruments, sky};
 
 /// Largest study file, and largest file that a study names, bytes.
 pub const MOST_BYTES: u64 = 8 << 20;
-/// Most showers of one primary.
+/// Most showers of one primary, and most array events of one primary.
 const MOST_SHOWERS: u64 = 100_000_000;
+const MOST_EVENTS: u64 = 500_000_000;
 
 /// The files that a study names, by the order in which it names them.
 pub(super) struct Companions {
@@ -114,7 +118,7 @@ fn resolved(
     let sources = sky::sources(&root)?;
     let backgrounds = sky::backgrounds(&root)?;
     let budget = budget(root.section("budget")?)?;
-    let ranking = ranking(root.section_if_any("ranking")?)?;
+    let ranking = ranking(root.section_if_any("ranking")?, &kinds)?;
     root.finish()?;
     let checksum = companions.hash.clone().finalize();
     Ok(Study {
@@ -153,6 +157,18 @@ fn name(path: &Path, root: &Section<'_>) -> Result<String, StudyError> {
 fn budget(section: Section<'_>) -> Result<Budget, StudyError> {
     let gamma_showers = section.count("gamma_showers", 16, MOST_SHOWERS)?;
     let background_showers = section.count("background_showers", 16, MOST_SHOWERS)?;
+    for (key, showers) in
+        [("gamma_showers", gamma_showers), ("background_showers", background_showers)]
+    {
+        let events = showers.saturating_mul(CORES_PER_SHOWER as u64);
+        if events > MOST_EVENTS {
+            let problem = format!(
+                "at {CORES_PER_SHOWER} core positions each gives {events} array events; \
+                 at most {MOST_EVENTS} are allowed"
+            );
+            return Err(section.wrong(key, problem));
+        }
+    }
     let gamma_energy_gev = energies(&section, "gamma_energy_gev", [10.0, 30_000.0])?;
     let background_energy_gev = energies(&section, "background_energy_gev", [20.0, 100_000.0])?;
     let background_rate_error =
@@ -183,13 +199,20 @@ fn energies(
     Ok(range)
 }
 
-fn ranking(section: Option<Section<'_>>) -> Result<Ranking, StudyError> {
+fn ranking(section: Option<Section<'_>>, kinds: &[TelescopeKind]) -> Result<Ranking, StudyError> {
     const SCORES: [&str; 3] =
         ["gamma_rate_hz", "gamma_rate_per_cost", "gamma_rate_per_root_background"];
     let Some(section) = section else {
         return Ok(Ranking { score: SCORES[0].into(), resamples: 400 });
     };
     let score = SCORES[section.choice_or("score", &SCORES, 0)?].to_owned();
+    if let Some(free) = kinds.iter().find(|kind| !(kind.cost > 0.0)) {
+        if score == SCORES[1] {
+            let problem =
+                format!("needs a cost above 0 for every telescope; {} has none", free.name);
+            return Err(section.wrong("score", problem));
+        }
+    }
     let resamples = section.count_or("resamples", 20, 100_000, 400)? as usize;
     section.finish()?;
     Ok(Ranking { score, resamples })
