@@ -15,8 +15,11 @@ pub fn with_error(value: f64, error: f64) -> String {
         let digits = (digits + power).clamp(0, 12) as usize;
         return format!("({:.digits$} ± {:.digits$})e{power}", value / scale, error / scale);
     }
-    let unit = 10.0_f64.powi(-digits.min(0));
-    let (value, error) = ((value / unit).round() * unit, (error / unit).round() * unit);
+    let rounded = |number: f64| {
+        let unit = 10.0_f64.powi(-digits);
+        if digits < 0 { (number / unit).round() * unit } else { number }
+    };
+    let (value, error) = (rounded(value), rounded(error));
     let digits = digits.clamp(0, 12) as usize;
     format!("{value:.digits$} ± {error:.digits$}")
 }
