@@ -44,19 +44,12 @@ fn atmosphere(section: &Section<'_>, files: &mut Companions) -> Result<Atmospher
         let (path, _) = files.read(section, "profile_file", name)?;
         return from_file(&path).map_err(|problem| section.wrong("profile_file", problem));
     }
-    named(section.text_if_any("profile")?.unwrap_or("us1976"))
-        .map_err(|problem| section.wrong("profile", problem))
+    let name = section.text_if_any("profile")?.unwrap_or("us1976");
+    Atmosphere::named(name).map_err(|error| section.wrong("profile", error.to_string()))
 }
 
 fn from_file(path: &Path) -> Result<Atmosphere, String> {
     Err(format!("{}: profile tables are not read yet", path.display()))
-}
-
-fn named(name: &str) -> Result<Atmosphere, String> {
-    match name {
-        "us1976" => Ok(Atmosphere::us1976()),
-        _ => Err("is unknown; write one of \"us1976\"".into()),
-    }
 }
 
 /// Reads `[night_sky]`.
