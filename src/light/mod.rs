@@ -5,6 +5,7 @@
 //! and where it came from; `footprint` adds the slabs of one shower and hands out photoelectrons.
 
 pub mod cherenkov;
+pub mod collect;
 pub mod column;
 pub mod footprint;
 pub mod grid;

@@ -48,6 +48,12 @@ impl AirTable {
         self.observer_altitude_m + position.z + (x * x + y * y) * self.curvature_per_m
     }
 
+    /// Altitude of the plane z = 0, m.
+    #[inline]
+    pub fn observer_altitude_m(&self) -> f64 {
+        self.observer_altitude_m
+    }
+
     /// Altitude of the last entry, m.
     #[inline]
     pub fn top_m(&self) -> f64 {
