@@ -62,7 +62,7 @@ fn by_energy(title: &str, y_name: &str, decades: f64, curves: &[Curve]) -> Strin
     };
     let x = Scale::logarithmic(shown(0), 12.0);
     let y = Scale::logarithmic(of(1), decades);
-    let frame = Frame { left: 290.0, right: 1820.0, top: 50.0, bottom: 1250.0, x, y };
+    let frame = Frame { left: 290.0, right: 1740.0, top: 50.0, bottom: 1250.0, x, y };
     svg(1420, title, |canvas| {
         frame.draw_below(canvas, "True energy (GeV)");
         frame.draw_left(canvas, y_name);
@@ -76,11 +76,11 @@ fn by_energy(title: &str, y_name: &str, decades: f64, curves: &[Curve]) -> Strin
         }
         frame.draw_outline(canvas);
         let names: Vec<&str> = curves.iter().take(SHOWN).map(|curve| curve.name.as_str()).collect();
-        legend(canvas, 1860.0, 80.0, &names);
+        legend(canvas, 1780.0, 80.0, &names);
         if curves.len() > SHOWN {
             let (y, rest) = (80.0 + 76.0 * SHOWN as f64, curves.len() - SHOWN);
-            canvas.line(&[(1860.0, y), (2050.0, y)], PALE, 4);
-            canvas.text(&format!("{rest} further layouts"), (2070.0, y), TICK_FONT, Side::Left);
+            canvas.line(&[(1780.0, y), (1970.0, y)], PALE, 4);
+            canvas.text(&format!("{rest} further layouts"), (1990.0, y), TICK_FONT, Side::Left);
         }
     })
 }
@@ -125,7 +125,7 @@ pub(super) fn draw_curve(
 
 /// Names beside samples of their curves, right of the data.
 pub(super) fn legend(canvas: &Canvas<'_>, left: f64, top: f64, names: &[&str]) {
-    let room = ((f64::from(WIDTH) - left - 220.0) / (0.56 * f64::from(TICK_FONT))) as usize;
+    let room = ((f64::from(WIDTH) - left - 205.0) / (0.5 * f64::from(TICK_FONT))) as usize;
     for (index, name) in names.iter().enumerate() {
         let (y, look) = (top + 76.0 * index as f64, look(index));
         canvas.dashed(&[(left, y), (left + 190.0, y)], look.dash, look.colour, LINE);
