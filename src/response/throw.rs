@@ -63,6 +63,11 @@ impl Throw {
         PI * (self.rings_m[ring].powi(2) - inner * inner)
     }
 
+    /// Areas of all rings, m2.
+    pub fn ring_areas_m2(&self) -> Vec<f64> {
+        (0..self.rings_m.len()).map(|ring| self.ring_area_m2(ring)).collect()
+    }
+
     /// The word of one number: the same whatever else is thrown. Numbers from
     /// [`Throw::word_count`] on repeat the throw with fresh randomness; a sample of n repetitions
     /// divides the exposures by n.

@@ -5,4 +5,5 @@ mod cascade;
 mod hadronic;
 mod layout;
 mod light;
+mod rates;
 mod telescope;
