@@ -2,7 +2,7 @@
 
 use crate::layout::{Ranked, rank};
 use crate::light::LightModel;
-use crate::rates::{self, EnergyBin, effective_areas, rate, threshold_gev};
+use crate::rates::{EnergyBin, differential_rates, edge_fraction, effective_areas, threshold_gev};
 use crate::report::{
     AreaRow, Counter, KindRow, LayoutMap, LayoutRow, PlacedTelescope, PlanResult, PoolRow,
     Provenance, RateRow, SiteSummary,
@@ -26,20 +26,13 @@ pub fn result(
     for place in ranked {
         let layout = &scored[place.layout];
         let name = &planned.study.layouts[place.layout].name;
-        let gamma = (&planned.gamma, &layout.gamma_plane, &layout.gamma_words);
+        let gamma = (&planned.gamma, &layout.gamma_plane);
         let backgrounds = planned.backgrounds.iter().zip(&layout.backgrounds);
         let all = [gamma]
             .into_iter()
-            .chain(backgrounds.map(|(weighted, (plane, words, _))| (weighted, plane, words)));
-        for (weighted, plane, words) in all {
-            energy_rows(
-                name,
-                weighted,
-                plane,
-                words,
-                &mut effective_areas,
-                &mut differential_rates,
-            );
+            .chain(backgrounds.map(|(weighted, (plane, _, _))| (weighted, plane)));
+        for (weighted, plane) in all {
+            energy_rows(name, weighted, plane, &mut effective_areas, &mut differential_rates);
         }
     }
     PlanResult {
@@ -111,15 +104,17 @@ fn energy_rows(
     layout: &str,
     weighted: &Weighted,
     plane: &[u64],
-    words: &[f64],
     areas: &mut Vec<AreaRow>,
     densities: &mut Vec<RateRow>,
 ) {
     let throw = &weighted.sample.throw;
     let primary = throw.species.to_string();
     let bins = EnergyBin::cover(throw.energy_gev.0, throw.energy_gev.1, BINS_PER_DECADE);
-    let of_bins = effective_areas(&weighted.sample.words, plane, throw.solid_angle_sr(), &bins);
-    for (bin, area) in bins.iter().zip(of_bins) {
+    let (sample, areas_m2) = (&weighted.sample, throw.ring_areas_m2());
+    let of_bins = effective_areas(&sample.words, plane, &areas_m2, &bins);
+    let reach = (areas_m2.as_slice(), throw.solid_angle_sr());
+    let rates = differential_rates(&sample.words, plane, reach, &weighted.spectrum, &bins);
+    for ((bin, area), rate) in bins.iter().zip(of_bins).zip(rates) {
         areas.push(AreaRow {
             layout: layout.into(),
             primary: primary.clone(),
@@ -128,20 +123,13 @@ fn energy_rows(
             area_m2: area.value,
             error_m2: area.error,
         });
-        let inside =
-            weighted.sample.words.iter().zip(words).filter(|(word, _)| {
-                word.energy_gev >= bin.low_gev && word.energy_gev < bin.high_gev
-            });
-        let (words, rates): (Vec<_>, Vec<_>) = inside.map(|(word, rate)| (*word, *rate)).unzip();
-        let estimate = rates::rate_hz(&words, &rates);
-        let width = bin.high_gev - bin.low_gev;
         densities.push(RateRow {
             layout: layout.into(),
             primary: primary.clone(),
             energy_low_gev: bin.low_gev,
             energy_high_gev: bin.high_gev,
-            rate_hz_gev: estimate.value / width,
-            error_hz_gev: estimate.error / width,
+            rate_hz_gev: rate.value,
+            error_hz_gev: rate.error,
         });
     }
 }
@@ -237,7 +225,7 @@ fn warnings(planned: &Planned<'_>, scored: &[Scored], ranked: &[Ranked]) -> Vec<
     );
     for (weighted, words, estimate) in edges {
         let (name, sample) = (weighted.sample.species, &weighted.sample);
-        let edge = rate::edge_fraction(&sample.words, words);
+        let edge = edge_fraction(&sample.words, words);
         let throw = &sample.throw;
         let radius = throw.rings_m[throw.rings_m.len() - 1];
         let inner = throw.rings_m[throw.rings_m.len() - 2];

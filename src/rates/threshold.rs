@@ -10,14 +10,16 @@ use super::rate::{Estimate, by_ring};
 
 /// Bins for the fit, per decade of energy.
 const PER_DECADE: f64 = 16.0;
-/// Half-width of the fit, in ln E; it spans 0.7 decades.
-const REACH: f64 = 0.8;
+/// Half-width of the fit, in ln E; the window spans 0.87 decades.
+const REACH: f64 = 1.0;
 /// Groups of words left out in turn for the error.
 const GROUPS: usize = 20;
+/// Bins on either side that steady the search for the highest.
+const SMOOTH: usize = 3;
 
 /// Peak of dR/dE, GeV. `rates` is what each word adds to the rate.
 ///
-/// A local fit: a cubic in ln E to ln(dR/dE) in bins of a sixteenth of a decade within 0.8 in ln E of
+/// A local fit: a cubic in ln E to ln(dR/dE) in bins of a sixteenth of a decade within 1.0 in ln E of
 /// the highest, each weighted by its number of effective words, then the maximum of the cubic. The
 /// peak of dR/dlnE lies 25 to 30 % higher for a Crab-like source.
 ///
@@ -97,9 +99,10 @@ fn densities(
 }
 
 /// Where the density is highest, each bin averaged with its neighbours against noise.
+/// The window of the fit is put there.
 fn top(points: &[Point]) -> Option<f64> {
     let smooth = |at: usize| {
-        let near = &points[at.saturating_sub(1)..(at + 2).min(points.len())];
+        let near = &points[at.saturating_sub(SMOOTH)..(at + SMOOTH + 1).min(points.len())];
         let weight: f64 = near.iter().map(|point| point.2).sum();
         near.iter().map(|point| point.1 * point.2).sum::<f64>() / weight
     };
