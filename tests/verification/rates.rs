@@ -171,10 +171,6 @@ fn verify_threshold_of_an_area_with_a_known_peak() {
             pulls.push((found.value - exact) / found.error);
             values.push(found.value);
         }
-            "{rise} {index} exact {exact} nan {} vals {:?}",
-            values.iter().filter(|v| v.is_nan()).count(),
-            &values[..20]
-        );
         let mean = values.iter().sum::<f64>() / 100.0;
         assert!((mean / exact - 1.0).abs() < 0.02, "{rise} {index}: {mean} for {exact}");
         // 100 trials: 68 % is known to 4.7 %.
