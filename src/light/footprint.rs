@@ -114,13 +114,16 @@ impl LightModel {
         let mut density = vec![0.0_f32; self.worth.len() * cells];
         let mut moment = vec![0.0_f32; cells];
         let secant_ratio = self.secant_ratio(axis);
-        for slice in &slices {
+        let mut quanta = vec![[0.0_f32; 2]; self.worth.len() * slices.len()];
+        for (place, slice) in slices.iter().enumerate() {
             let nodes = [self.node(slice.slab, slice.age), self.node(slice.slab, slice.age + 1)];
             for (detector, worth) in self.worth.iter().enumerate() {
-                let value = worth[slice.slab].at(secant_ratio);
+                let value = worth[slice.slab].at(secant_ratio) as f32;
+                let weights = slice.tracks_m.map(|track| track * value);
+                quanta[detector * slices.len() + place] = weights;
                 let table = &mut density[detector * cells..(detector + 1) * cells];
-                for (node, weight) in nodes.into_iter().zip(slice.tracks_m) {
-                    add(table, &node.density_m2, (f64::from(weight) * value) as f32);
+                for (node, weight) in nodes.into_iter().zip(weights) {
+                    add(table, &node.density_m2, weight);
                 }
             }
             let reach = axis.steps[slice.slab].distance_m as f32;
@@ -138,7 +141,7 @@ impl LightModel {
         for (value, total) in moment.iter_mut().zip(&tracks) {
             *value = if *total > 0.0 { *value / *total } else { 0.0 };
         }
-        Footprint { slices, density, inverse_distance: moment, stretch: self.stretch(axis) }
+        Footprint { slices, quanta, density, inverse_distance: moment, stretch: self.stretch(axis) }
     }
 
     /// Counted quanta per m2 across the axis at a pad.
@@ -172,19 +175,18 @@ impl LightModel {
         mut take: impl FnMut(Arrival),
     ) {
         let Request { footprint, axis, detector, pad } = *request;
-        let secant_ratio = self.secant_ratio(axis);
         let sector = self.sector(pad.azimuth_rad);
+        let place = grid::place(pad.distance_m * footprint.stretch);
+        let slices = footprint.slices.len();
+        let quanta = &footprint.quanta[detector * slices..(detector + 1) * slices];
         scratch.clear();
         let mut total = 0.0;
-        for slice in &footprint.slices {
-            let worth = self.worth[detector][slice.slab].at(secant_ratio);
-            for (offset, weight) in slice.tracks_m.into_iter().enumerate() {
-                let density =
-                    self.place_in(slice.slab, axis, footprint, pad).map_or(0.0, |place| {
-                        let node = self.node(slice.slab, slice.age + offset);
-                        self.read(&node.density_m2, sector, place)
-                    });
-                total += f64::from(weight) * worth * density;
+        for (slice, weights) in footprint.slices.iter().zip(quanta) {
+            let bracket = place_in(place, axis.steps[slice.slab].distance_m, pad);
+            for (offset, weight) in weights.iter().enumerate() {
+                let node = self.node(slice.slab, slice.age + offset);
+                let density = bracket.map_or(0.0, |at| self.read(&node.density_m2, sector, at));
+                total += f64::from(*weight) * density;
                 scratch.push(total);
             }
         }
@@ -197,8 +199,9 @@ impl LightModel {
             let chosen = scratch.partition_point(|sum| *sum <= target).min(scratch.len() - 1);
             let slice = &footprint.slices[chosen / 2];
             let node = self.node(slice.slab, slice.age + chosen % 2);
-            let Some(place) = self.place_in(slice.slab, axis, footprint, pad) else { continue };
-            take(self.arrival(node, slice.slab, place, (sector, handed), axis, pad, stream));
+            let bracket = place_in(place, axis.steps[slice.slab].distance_m, pad);
+            let Some(at) = bracket else { continue };
+            take(self.arrival(node, slice.slab, at, (sector, handed), axis, pad, stream));
         }
     }
 
@@ -231,19 +234,6 @@ impl LightModel {
             lateral_rad: lateral / distance,
             time_ns: (detour + delay) / SPEED_OF_LIGHT_M_NS,
         }
-    }
-
-    /// Where a pad lies on the grid of one slab, whose tables are made at the reference distance.
-    fn place_in(
-        &self,
-        slab: usize,
-        axis: &AxisPath,
-        footprint: &Footprint,
-        pad: &Pad,
-    ) -> Option<(usize, usize, f32)> {
-        let distance = axis.steps[slab].distance_m;
-        let nearer = distance / (distance - pad.rise_m).max(0.05 * distance);
-        grid::bracket(pad.distance_m * footprint.stretch * nearer)
     }
 
     fn slices(&self, axis: &AxisPath, shower: &GaisserHillas) -> Vec<Slice> {
@@ -310,6 +300,14 @@ impl LightModel {
     }
 }
 
+/// Where a pad above or below the core plane lies on the grid of a slab at a distance: light of the
+/// slab spreads in proportion to the distance.
+#[inline]
+fn place_in(place: f64, distance_m: f64, pad: &Pad) -> Option<(usize, usize, f32)> {
+    let stretch = pad.rise_m / (distance_m - pad.rise_m).max(0.05 * distance_m);
+    grid::bracket_of(grid::shifted(place, stretch))
+}
+
 type Sector = (usize, usize, f64);
 
 /// The mean of the size over a slab, by Simpson's rule.
@@ -337,6 +335,8 @@ struct Slice {
 #[derive(Clone, Debug)]
 pub struct Footprint {
     slices: Vec<Slice>,
+    /// Emitted quanta by detector and slice, at the two ages.
+    quanta: Vec<[f32; 2]>,
     density: Vec<f32>,
     inverse_distance: Vec<f32>,
     stretch: f64,

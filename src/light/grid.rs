@@ -29,11 +29,28 @@ pub fn place(distance_m: f64) -> f64 {
     }
 }
 
+/// The place of a distance times `1 + stretch`, from the place of the distance; exact below 200 m
+/// and to first order in the stretch beyond.
+#[inline]
+pub fn shifted(place: f64, stretch: f64) -> f64 {
+    if place < LINEAR_BINS as f64 {
+        place * (1.0 + stretch)
+    } else {
+        place + LOG_BINS as f64 * core::f64::consts::LOG10_E * stretch
+    }
+}
+
 /// The two bin centres around a distance and the weight of the second, for linear interpolation;
 /// held at the first centre below 2.5 m, `None` beyond the reach.
 #[inline]
 pub fn bracket(distance_m: f64) -> Option<(usize, usize, f32)> {
-    let place = place(distance_m) - 0.5;
+    bracket_of(place(distance_m))
+}
+
+/// The same for a place on the grid.
+#[inline]
+pub fn bracket_of(place: f64) -> Option<(usize, usize, f32)> {
+    let place = place - 0.5;
     if place >= (BINS - 1) as f64 {
         return None;
     }

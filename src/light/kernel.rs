@@ -18,6 +18,8 @@ use super::grid;
 pub const ORIGINS: usize = 32;
 /// Sectors of azimuth from the direction of magnetic deflection, folded to a quarter turn.
 pub const FIELD_SECTORS: usize = 4;
+/// Emitters used for one node.
+const EMITTERS_PER_NODE: usize = 4_000;
 /// Emitters that fly more than this from the axis are left out: their light is spread over
 /// kilometres and the small-angle ring no longer holds, rad.
 const WIDEST_RAD: f64 = 1.2;
@@ -105,14 +107,19 @@ impl Node {
         let mut stream = Stream::keyed(0, Stage::Table, key);
         let turns = if sectors > 1 { 3 } else { 1 };
         let mut arcs: Vec<Vec<Arc>> = (0..sectors * grid::BINS).map(|_| Vec::new()).collect();
-        for emitter in &age.emitters {
+        // Every slab uses its own share of the emitters, so that their sampling noise averages out
+        // along a shower.
+        let shares = (age.emitters.len() / EMITTERS_PER_NODE).max(1);
+        let first = key.first().map_or(0, |slab| *slab as usize % shares);
+        let mut emitters = 0.0;
+        for emitter in age.emitters.iter().skip(first).step_by(shares) {
+            emitters += 1.0;
             for _ in 0..turns {
                 if let Some((ring, weight)) = ring(emitter, geometry, &mut stream) {
                     scatter(ring, weight / f64::from(turns), sectors, &mut arcs);
                 }
             }
         }
-        let emitters = age.emitters.len().max(1) as f64;
         let mut density_m2 = vec![0.0; sectors * grid::BINS];
         let mut origins = vec![Origin::default(); sectors * grid::BINS * ORIGINS];
         for (cell, arcs) in arcs.iter().enumerate() {

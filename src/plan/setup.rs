@@ -13,10 +13,10 @@ use crate::study::{self, Study};
 use crate::telescope::{Threshold, accidental};
 use crate::units::radians;
 
-/// Slabs of air and emitters at each age: converged to 1 % and 3 % (test
+/// Slabs of air and emitters at each age: converged to 1 % and 2 % (test
 /// `verify_pool_converges_in_slabs_and_samples`).
 const SLABS: usize = 36;
-const EMITTERS: usize = 10_000;
+const EMITTERS: usize = 40_000;
 /// Energies are thrown as E to this negative power.
 const THROWN_INDEX: f64 = 1.5;
 /// How far from the outermost telescope a shower can trigger, m at zenith: beyond this the rate is

@@ -1,7 +1,7 @@
 //! Emitters drawn from published distributions of energy, angle and lateral distance.
 
 use crate::consts::AIR_RADIATION_LENGTH_G_CM2;
-use crate::numerics::{Stage, Stream};
+use crate::numerics::{Stage, Stream, UniformTable};
 
 use super::emitters::{Emitter, EmitterNode, EmitterTable};
 
@@ -78,8 +78,10 @@ pub fn table(spread: Spread, samples: usize, seed: u64) -> EmitterTable {
     let ages = [0.2, 0.3, 0.4, 0.5, 0.6, 0.7, 0.8, 0.9, 1.0, 1.1, 1.2, 1.4, 1.6, 1.8];
     let nodes = ages.iter().enumerate().map(|(index, &age)| {
         let mut stream = Stream::keyed(seed, Stage::Table, &[index as u64]);
-        let emitters =
-            (0..samples).map(|place| draw(age, place, samples, spread, &mut stream)).collect();
+        let energies = energy_table(age);
+        let emitters = (0..samples)
+            .map(|place| draw(age, &energies, place, samples, spread, &mut stream))
+            .collect();
         EmitterNode { age, fraction: track_fraction(FLOOR_MEV, age), emitters }
     });
     EmitterTable {
@@ -89,9 +91,16 @@ pub fn table(spread: Spread, samples: usize, seed: u64) -> EmitterTable {
     }
 }
 
-fn draw(age: f64, place: usize, samples: usize, spread: Spread, stream: &mut Stream) -> Emitter {
+fn draw(
+    age: f64,
+    energies: &UniformTable,
+    place: usize,
+    samples: usize,
+    spread: Spread,
+    stream: &mut Stream,
+) -> Emitter {
     let rank = (place as f64 + stream.uniform()) / samples as f64;
-    let energy_mev = energy_of_rank(rank, age);
+    let energy_mev = energies.value(-(1.0 - rank).ln()).exp();
     let mean_w = mean_scaled_angle(energy_mev, age);
     let lever = SCATTERING_ENERGY_MEV / energy_mev;
     let draw_angle = |stream: &mut Stream| {
@@ -118,13 +127,15 @@ fn draw(age: f64, place: usize, samples: usize, spread: Spread, stream: &mut Str
     }
 }
 
-/// The energy above which the fraction 1 - `rank` of the emitters lies, MeV.
-fn energy_of_rank(rank: f64, age: f64) -> f64 {
-    let target = (1.0 - rank) * track_fraction(FLOOR_MEV, age);
-    let (mut low, mut high) = (FLOOR_MEV.ln(), 1e8_f64.ln());
-    for _ in 0..50 {
-        let middle = 0.5 * (low + high);
-        if track_fraction(middle.exp(), age) > target { low = middle } else { high = middle }
-    }
-    (0.5 * (low + high)).exp()
+/// Logarithm of the energy (MeV) above which a fraction q of the emitters lies, by -ln q.
+fn energy_table(age: f64) -> UniformTable {
+    UniformTable::new(0.0, 16.0, 1_601, |log_share| {
+        let target = (-log_share).exp() * track_fraction(FLOOR_MEV, age);
+        let (mut low, mut high) = (FLOOR_MEV.ln(), 1e8_f64.ln());
+        for _ in 0..50 {
+            let middle = 0.5 * (low + high);
+            if track_fraction(middle.exp(), age) > target { low = middle } else { high = middle }
+        }
+        0.5 * (low + high)
+    })
 }
