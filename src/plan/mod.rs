@@ -117,6 +117,7 @@ fn simulate<'a>(
     let sky_per_ns: Vec<f64> =
         study.kinds.iter().map(|kind| kind.sky_photoelectrons_per_ns(&study.night_sky)).collect();
     let (columns, members) = columns(study);
+    let developments = setup::developments();
     let scene = Scene {
         seed: study.seed,
         kinds: &study.kinds,
@@ -126,7 +127,7 @@ fn simulate<'a>(
         field_ut: setup::field_ut(study),
         columns: columns.clone(),
         light_scale: 1.0,
-        parts: &crate::light::parts,
+        parts: &|primary, light, stream| crate::light::parts(primary, light, &developments, stream),
     };
     let run = |name: &str, throw: crate::response::Throw| {
         progress.stage(name, throw.word_count() as u64);

@@ -24,6 +24,7 @@ const PRIMARIES: [(Species, f64); 4] = [
 pub fn rows(study: &Study, light: &LightModel) -> Vec<PoolRow> {
     let distances: Vec<f64> = (0..40).map(|step| 5.0 + 10.0 * f64::from(step)).collect();
     let photons = light.detectors() - 1;
+    let developments = setup::developments();
     let mut rows = Vec::new();
     for (index, (species, energy_gev)) in PRIMARIES.into_iter().enumerate() {
         let primary = Primary { species, energy_gev, direction: setup::pointing(study) };
@@ -33,7 +34,7 @@ pub fn rows(study: &Study, light: &LightModel) -> Vec<PoolRow> {
                 let mut stream = setup::table_stream(study, index as u64, shower);
                 let axis = light.column.axis(primary.direction.zenith_rad);
                 let mut sums = vec![0.0; distances.len()];
-                for part in parts(&primary, light, &mut stream) {
+                for part in parts(&primary, light, &developments, &mut stream) {
                     let footprint = light.footprint(&axis, &part.development);
                     for (sum, distance) in sums.iter_mut().zip(&distances) {
                         *sum += azimuth_mean(light, &footprint, photons, *distance, part.offset_m);

@@ -109,7 +109,13 @@ fn energy_rows(
 ) {
     let throw = &weighted.sample.throw;
     let primary = throw.species.to_string();
-    let bins = EnergyBin::cover(throw.energy_gev.0, throw.energy_gev.1, BINS_PER_DECADE);
+    let (lowest, highest) = throw.energy_gev;
+    let mut bins = EnergyBin::cover(lowest, highest, BINS_PER_DECADE);
+    // The first and last bin end where the throw does.
+    for bin in &mut bins {
+        bin.low_gev = bin.low_gev.max(lowest);
+        bin.high_gev = bin.high_gev.min(highest);
+    }
     let (sample, areas_m2) = (&weighted.sample, throw.ring_areas_m2());
     let of_bins = effective_areas(&sample.words, plane, &areas_m2, &bins);
     let reach = (areas_m2.as_slice(), throw.solid_angle_sr());

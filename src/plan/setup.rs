@@ -7,16 +7,15 @@ use crate::light::{Detector, LightModel, LightSettings};
 use crate::numerics::{Stage, Stream};
 use crate::rates::{Spectrum, SpectrumError};
 use crate::response::{Column, SHOWERS_PER_WORD, Throw};
-use crate::shower::profile::hillas::{self, Spread};
+use crate::shower::profile::EmitterTable;
+use crate::shower::profile::shipped::DevelopmentTable;
 use crate::shower::{Direction, Species};
 use crate::study::{self, Study};
 use crate::telescope::{Threshold, accidental};
 use crate::units::radians;
 
-/// Slabs of air and emitters at each age: converged to 1 % and 2 % (test
-/// `verify_pool_converges_in_slabs_and_samples`).
+/// Slabs of air: converged to 1 % (test `verify_pool_converges_in_slabs_and_samples`).
 const SLABS: usize = 36;
-const EMITTERS: usize = 40_000;
 /// Energies are thrown as E to this negative power.
 const THROWN_INDEX: f64 = 1.5;
 /// How far from the outermost telescope a shower can trigger, m at zenith: beyond this the rate is
@@ -62,9 +61,14 @@ pub fn extinction(study: &Study) -> Extinction {
     }
 }
 
+/// How electromagnetic showers develop: the table that ships.
+pub fn developments() -> DevelopmentTable {
+    DevelopmentTable::shipped().expect("the table that ships is whole")
+}
+
 /// Light tables for the study's kinds, in their order, and last for plain photons.
 pub fn light_model(study: &Study) -> LightModel {
-    let table = hillas::table(Spread::FULL, EMITTERS, 1);
+    let table = EmitterTable::shipped().expect("the table that ships is whole");
     let (air, altitude_m) = (&study.air.atmosphere, study.site.altitude_m);
     let extinction = extinction(study);
     let settings = LightSettings {
@@ -74,7 +78,7 @@ pub fn light_model(study: &Study) -> LightModel {
         },
         observer_altitude_m: altitude_m,
         zenith_rad: radians(study.pointing.zenith_deg),
-        transverse_field_ut: 0.0,
+        transverse_field_ut: field_ut(study).cross(&pointing(study).to_source()).norm(),
         emitters: &table,
         slabs: SLABS,
     };
