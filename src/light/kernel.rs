@@ -15,7 +15,7 @@ use super::cherenkov::sin2_emission_angle;
 use super::grid;
 
 /// Origins kept per bin of distance: what images are made of.
-pub const ORIGINS: usize = 32;
+pub const ORIGINS: usize = 16;
 /// Sectors of azimuth from the direction of magnetic deflection, folded to a quarter turn.
 pub const FIELD_SECTORS: usize = 4;
 /// Emitters used for one node.
@@ -62,7 +62,7 @@ struct Arc {
     weight: f64,
     share: (f64, f64),
     ring: Ring,
-    side: f64,
+    side: usize,
 }
 
 #[derive(Clone, Copy)]
@@ -75,7 +75,7 @@ struct Ring {
 
 impl Ring {
     fn centre_distance(&self) -> f64 {
-        self.centre[0].hypot(self.centre[1])
+        (self.centre[0] * self.centre[0] + self.centre[1] * self.centre[1]).sqrt()
     }
 
     /// Share of the ring within `distance` of the axis: acos((c^2 + R^2 - d^2) / (2 c R)) / pi.
@@ -85,12 +85,23 @@ impl Ring {
         cosine.clamp(-1.0, 1.0).acos() / PI
     }
 
-    /// The landing point where the share within is `share`, on one side of the ring.
-    fn landing(&self, share: f64, side: f64) -> [f64; 2] {
-        let turn = side * PI * (1.0 - share);
-        let angle = self.centre[1].atan2(self.centre[0]) + turn;
-        let (sin, cos) = angle.sin_cos();
-        [self.centre[0] + self.radius * cos, self.centre[1] + self.radius * sin]
+    /// Unit vector towards the centre.
+    fn towards_centre(&self) -> [f64; 2] {
+        let distance = self.centre_distance();
+        if distance > 0.0 { self.centre.map(|x| x / distance) } else { [1.0, 0.0] }
+    }
+
+    /// The landing points on the two sides of the ring where the share within is `share`.
+    fn landings(&self, unit: [f64; 2], share: f64) -> [[f64; 2]; 2] {
+        let (sin, cos) = (PI * (1.0 - share)).sin_cos();
+        let (along, across) = (self.radius * cos, self.radius * sin);
+        let point = |side: f64| {
+            [
+                self.centre[0] + along * unit[0] - side * across * unit[1],
+                self.centre[1] + along * unit[1] + side * across * unit[0],
+            ]
+        };
+        [point(-1.0), point(1.0)]
     }
 }
 
@@ -105,7 +116,7 @@ impl Node {
     pub fn new(age: &EmitterNode, geometry: Geometry, key: &[u64]) -> Self {
         let sectors = if geometry.field_ut > 0.0 { FIELD_SECTORS } else { 1 };
         let mut stream = Stream::keyed(0, Stage::Table, key);
-        let turns = if sectors > 1 { 3 } else { 1 };
+        let turns = if sectors > 1 { 2 } else { 1 };
         let mut arcs: Vec<Vec<Arc>> = (0..sectors * grid::BINS).map(|_| Vec::new()).collect();
         // Every slab uses its own share of the emitters, so that their sampling noise averages out
         // along a shower.
@@ -169,21 +180,18 @@ fn scatter(ring: Ring, weight: f64, sectors: usize, arcs: &mut [Vec<Arc>]) {
     let c = ring.centre_distance();
     let (nearest, farthest) = ((c - ring.radius).abs(), c + ring.radius);
     let first = grid::place(nearest) as usize;
+    let unit = ring.towards_centre();
     let mut inner = 0.0;
     for bin in first..grid::BINS {
         let edge = grid::edge_m(bin + 1);
         let outer = if edge >= farthest { 1.0 } else { ring.share_within(edge) };
-        let share = (inner, outer);
+        let (share, weight) = ((inner, outer), weight * (outer - inner));
         if sectors == 1 {
-            arcs[bin].push(Arc { weight: weight * (outer - inner), share, ring, side: 1.0 });
+            arcs[bin].push(Arc { weight, share, ring, side: 1 });
         } else {
-            for side in [-1.0, 1.0] {
-                let landing = ring.landing(0.5 * (inner + outer), side);
-                let (folded, _) = fold(landing[1].atan2(landing[0]));
-                let sector = ((folded / FRAC_PI_2) * sectors as f64) as usize;
-                let cell = sector.min(sectors - 1) * grid::BINS + bin;
-                let weight = 0.5 * weight * (outer - inner);
-                arcs[cell].push(Arc { weight, share, ring, side });
+            for (side, landing) in ring.landings(unit, 0.5 * (inner + outer)).iter().enumerate() {
+                let cell = sector_of(*landing) * grid::BINS + bin;
+                arcs[cell].push(Arc { weight: 0.5 * weight, share, ring, side });
             }
         }
         if outer >= 1.0 {
@@ -191,6 +199,14 @@ fn scatter(ring: Ring, weight: f64, sectors: usize, arcs: &mut [Vec<Arc>]) {
         }
         inner = outer;
     }
+}
+
+/// The sector of a landing point, folded to a quarter turn.
+fn sector_of([x, y]: [f64; 2]) -> usize {
+    // Tangents of 22.5, 45 and 67.5 degrees.
+    const TANGENTS: [f64; FIELD_SECTORS - 1] =
+        [core::f64::consts::SQRT_2 - 1.0, 1.0, core::f64::consts::SQRT_2 + 1.0];
+    TANGENTS.iter().filter(|tangent| y.abs() > *tangent * x.abs()).count()
 }
 
 /// Keeps equal-weight origins by systematic resampling.
@@ -207,13 +223,15 @@ fn resample(arcs: &[Arc], total: f64, kept: &mut [Origin], stream: &mut Stream) 
         while next < sum {
             let Some(slot) = slots.next() else { return };
             let share = arc.share.0 + (arc.share.1 - arc.share.0) * stream.uniform();
-            *slot = origin(&arc.ring, arc.ring.landing(share, arc.side));
+            *slot =
+                origin(&arc.ring, arc.ring.landings(arc.ring.towards_centre(), share)[arc.side]);
             next += step;
         }
     }
     // Rounding may leave the last slot: give it the last arc.
     if let (Some(slot), Some(arc)) = (slots.next(), arcs.last()) {
-        *slot = origin(&arc.ring, arc.ring.landing(arc.share.1, arc.side));
+        *slot =
+            origin(&arc.ring, arc.ring.landings(arc.ring.towards_centre(), arc.share.1)[arc.side]);
     }
 }
 

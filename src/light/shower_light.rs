@@ -129,7 +129,7 @@ impl<'a> ShowerLight<'a> {
     fn relative(&self, part: &Part, view: &View) -> (Pad, [f64; 2]) {
         let x = view.transverse_m[0] - part.offset_m[0] - part.tilt[0] * view.rise_m;
         let y = view.transverse_m[1] - part.offset_m[1] - part.tilt[1] * view.rise_m;
-        let distance_m = x.hypot(y);
+        let distance_m = (x * x + y * y).sqrt();
         let unit = if distance_m > 0.0 { [x / distance_m, y / distance_m] } else { [1.0, 0.0] };
         let azimuth_rad =
             if self.model.has_field() { y.atan2(x) - self.bend_azimuth_rad } else { 0.0 };

@@ -28,8 +28,8 @@ pub struct Column {
 /// of pixels at any threshold used.
 pub const LEAST_PHOTOELECTRONS: f64 = 3.0;
 /// Photoelectrons drawn one by one; brighter images use that many with a larger weight, which adds
-/// 4 % to the noise of an image far above any threshold.
-pub const MOST_PHOTOELECTRONS: f64 = 600.0;
+/// 5 % to the noise of an image far above any threshold.
+pub const MOST_PHOTOELECTRONS: f64 = 400.0;
 
 /// Everything needed to make the images of a shower.
 pub struct Scene<'a> {

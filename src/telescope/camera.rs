@@ -94,7 +94,7 @@ impl Camera {
             return None;
         }
         let (column, row) = match self.shape {
-            PixelShape::Square => (x.round() as i32, y.round() as i32),
+            PixelShape::Square => (nearest(x) as i32, nearest(y) as i32),
             PixelShape::Hexagonal => nearest_hexagon(x, y),
         };
         if column.abs() > self.half || row.abs() > self.half {
@@ -132,12 +132,18 @@ fn centre(shape: PixelShape, pitch: f64, column: i32, row: i32) -> (f64, f64) {
     }
 }
 
+/// The nearest whole number of a value below 1e9: cheaper than a call of `round`.
+#[inline]
+fn nearest(value: f64) -> f64 {
+    ((value + 1_073_741_824.5) as i64 - 1_073_741_824) as f64
+}
+
 /// The hexagon around a point in axial coordinates, by rounding in cube coordinates.
 fn nearest_hexagon(x: f64, y: f64) -> (i32, i32) {
     let row = y / 0.75_f64.sqrt();
     let column = x - 0.5 * row;
     let third = -column - row;
-    let (mut c, mut r, t) = (column.round(), row.round(), third.round());
+    let (mut c, mut r, t) = (nearest(column), nearest(row), nearest(third));
     let errors = ((c - column).abs(), (r - row).abs(), (t - third).abs());
     if errors.0 > errors.1 && errors.0 > errors.2 {
         c = -r - t;

@@ -218,8 +218,10 @@ impl<'a> Readout<'a> {
         let (mut sum, mut time) = (0.0, 0.0);
         let kind = self.kind;
         for quantum in quanta {
-            let off_axis = f64::from(quantum.x_deg.hypot(quantum.y_deg));
-            let spread = kind.point_spread_deg.hypot(kind.point_spread_growth * off_axis) as f32;
+            let off_axis2 = f64::from(quantum.x_deg).powi(2) + f64::from(quantum.y_deg).powi(2);
+            let spread =
+                kind.point_spread_deg.powi(2) + kind.point_spread_growth.powi(2) * off_axis2;
+            let spread = spread.sqrt() as f32;
             let x = quantum.x_deg + spread * stream.normal() as f32;
             let y = quantum.y_deg + spread * stream.normal() as f32;
             let Some(pixel) = kind.camera.pixel(x, y) else { continue };
