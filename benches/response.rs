@@ -1,0 +1,108 @@
+//! Bit planes, rate sums and the store of the response table, 100,000 events.
+
+use std::hint::black_box;
+
+use criterion::{Criterion, Throughput, criterion_group, criterion_main};
+use nightpool::numerics::{Stage, Stream};
+use nightpool::rates::{Spectrum, event_rates, rate, rate_sum_hz};
+use nightpool::response::margin::{code, threshold_code};
+use nightpool::response::sample::plane;
+use nightpool::response::{
+    CellImage, PadKey, ResponseTable, Sample, TableBuilder, TableStamp, Throw, Word, WordCells,
+    store,
+};
+use nightpool::shower::{Direction, Species};
+use nightpool::telescope::{ImageRecord, ImageSummary};
+
+/// 1,564 words, one event in five lit.
+fn sample(pads: usize) -> Sample {
+    let throw = Throw {
+        species: Species::Gamma,
+        seed: 1,
+        energy_gev: (20.0, 20_000.0),
+        index: 1.6,
+        pointing: Direction::ZENITH,
+        cone_rad: 0.0,
+        centre_m: [0.0; 2],
+        rings_m: vec![100.0, 200.0, 400.0, 800.0],
+        words: 391,
+    };
+    let keys: Vec<_> = (0..pads).map(|pad| PadKey::new([pad as f64, 0.0, 0.0], "broad")).collect();
+    let words = (0..throw.word_count()).map(|number| {
+        let thrown = throw.word(number);
+        let mut stream = Stream::keyed(1, Stage::Image, &[number as u64]);
+        let mut codes = Vec::new();
+        let mut images = vec![Vec::new(); pads];
+        for cells in &mut images {
+            for event in 0..64 {
+                let lit = stream.uniform() < 0.2;
+                let margin = if lit { 0.8 * stream.exponential().exp() } else { 0.0 };
+                codes.push(code(margin));
+                let record = ImageRecord {
+                    margin_pe: margin as f32,
+                    photoelectrons: (30.0 * margin * stream.uniform()) as f32,
+                    time_ns: stream.normal() as f32,
+                    summary: ImageSummary {
+                        size_pe: (30.0 * margin) as f32,
+                        centroid_deg: [stream.normal() as f32, stream.normal() as f32],
+                        length_deg: stream.uniform() as f32,
+                        width_deg: stream.uniform() as f32,
+                        orientation_rad: stream.uniform() as f32,
+                        edge_fraction: 0.0,
+                    },
+                };
+                cells.extend(CellImage::of(event, &record));
+            }
+        }
+        let (energy_gev, exposure, ring) = (thrown.energy_gev, thrown.exposure, thrown.ring);
+        WordCells { word: Word { energy_gev, exposure, ring, angle_rad: 0.0 }, codes, images }
+    });
+    Sample::of_words(&throw, 0, keys, words.collect())
+}
+
+fn planes(criterion: &mut Criterion) {
+    let sample = sample(1);
+    let mut group = criterion.benchmark_group("100,000 events");
+    group.throughput(Throughput::Elements(sample.events() as u64));
+    let least = threshold_code(4.0);
+    group.bench_function("plane", |b| b.iter(|| plane(black_box(&sample.margins[0]), least)));
+    let bits = sample.plane(0, 4.0);
+    let spectrum = Spectrum::named("crab-magic-2015").expect("built in");
+    let each = event_rates(&sample.words, &spectrum);
+    group.bench_function("rate sum", |b| b.iter(|| rate_sum_hz(black_box(&bits), &each)));
+    group.bench_function("rate with error", |b| {
+        b.iter(|| rate(&sample.words, black_box(&bits), &spectrum));
+    });
+    group.finish();
+}
+
+fn disk(criterion: &mut Criterion) {
+    let mut builder = TableBuilder::new();
+    builder.insert(sample(40));
+    let stamp = TableStamp { study_checksum: "a".into(), upstream_checksum: "b".into(), seed: 1 };
+    let table: ResponseTable = builder.finish(stamp).expect("whole");
+    let folder = std::env::temp_dir().join(format!("nightpool-bench-{}", std::process::id()));
+    let mut group = criterion.benchmark_group("100,000 events on 40 pads");
+    group.sample_size(10);
+    group.bench_function("write", |b| {
+        b.iter(|| {
+            let _ = std::fs::remove_dir_all(&folder);
+            store::write(&folder, &table).expect("written");
+        });
+    });
+    group.bench_function("read", |b| b.iter(|| store::read(&folder, None).expect("read")));
+    group.finish();
+    let bytes: u64 = std::fs::read_dir(&folder)
+        .expect("there")
+        .map(|entry| entry.and_then(|entry| entry.metadata()).expect("a file").len())
+        .sum();
+    println!("store: {:.1} MB", bytes as f64 * 1e-6);
+    if std::env::var_os("NIGHTPOOL_KEEP").is_none() {
+        let _ = std::fs::remove_dir_all(&folder);
+    } else {
+        println!("kept in {}", folder.display());
+    }
+}
+
+criterion_group!(benches, planes, disk);
+criterion_main!(benches);
