@@ -9,6 +9,7 @@ pub mod error;
 pub mod image;
 pub mod margin;
 pub mod pad;
+pub mod reuse;
 pub mod sample;
 pub mod scene;
 pub mod store;

@@ -88,6 +88,20 @@ impl<'a> Scene<'a> {
         }
     }
 
+    /// The same scene with other telescopes.
+    pub fn with_columns(&self, columns: Vec<Column>) -> Self {
+        let (sky_per_ns, kinds, light, parts) =
+            (self.sky_per_ns.clone(), self.kinds, self.light, self.parts);
+        let Self { seed, pointing, field_ut, light_scale, .. } = *self;
+        Self { seed, kinds, sky_per_ns, light, pointing, field_ut, columns, light_scale, parts }
+    }
+
+    /// The telescope that a key names, if its kind is here.
+    pub fn column_of(&self, pad: &PadKey) -> Option<Column> {
+        let kind = self.kinds.iter().position(|kind| kind.name == pad.kind)?;
+        Some(Column { position_m: pad.position_m(), kind })
+    }
+
     /// The keys of the columns.
     pub fn pads(&self) -> Vec<PadKey> {
         self.columns.iter().map(|column| PadKey::of(column, self.kinds)).collect()
