@@ -1,1 +1,20 @@
-//! To be filled by its stage.
+//! Layouts: the ellipsoid against its published constants.
+
+use nightpool::layout::geodetic::Geodetic;
+
+/// NGA.STND.0036 (WGS84): derived semi-minor axis 6356752.3142 m; the length of a degree of
+/// latitude at the equator and the pole, 110574.3 m and 111693.9 m (Snyder 1987, USGS Prof. Paper
+/// 1395, table 4 is for Clarke 1866; WGS84 values from memory, and derivable: M = a(1-e2)/(...)^1.5).
+#[test]
+fn validate_ellipsoid_wgs84_derived_constants() {
+    let at = |latitude_deg| Geodetic { latitude_deg, longitude_deg: 0.0, height_m: 0.0 };
+    assert!((at(90.0).centred_m().z - 6_356_752.314_2).abs() < 1e-4);
+    assert!((at(0.0).centred_m().x - 6_378_137.0).abs() < 1e-9);
+    // A degree is short against the radius: the chord is 1.4 m (1 - sinc) shorter than the arc.
+    let degree = |latitude: f64| {
+        let chord = (at(latitude + 0.5).centred_m() - at(latitude - 0.5).centred_m()).norm();
+        chord / (1.0 - 1.0_f64.to_radians().powi(2) / 24.0)
+    };
+    assert!((degree(0.0) - 110_574.3).abs() < 1.0, "{}", degree(0.0));
+    assert!((degree(89.5) - 111_693.9).abs() < 1.0, "{}", degree(89.5));
+}
