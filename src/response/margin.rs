@@ -11,7 +11,7 @@ const STEPS_PER_E: f64 = 500.0;
 
 /// The code of a margin, rounded down, so that a margin never passes a threshold above it.
 pub fn code(margin_pe: f64) -> Code {
-    if !(margin_pe >= FLOOR_PE) {
+    if margin_pe.is_nan() || margin_pe < FLOOR_PE {
         return 0;
     }
     (1.0 + STEPS_PER_E * (margin_pe / FLOOR_PE).ln()).min(f64::from(Code::MAX)) as Code

@@ -9,4 +9,5 @@ mod light;
 mod rates;
 mod report;
 mod response;
+mod response_scene;
 mod telescope;
