@@ -151,7 +151,7 @@ fn verify_cascade_converges_in_steps_and_cuts() {
 /// two heights, by the cone's geometry alone.
 #[test]
 fn verify_muon_ring_is_frank_tamm_geometry() {
-    use nightpool::light::collect::emit;
+    use nightpool::light::collect::{Window, emit};
     let air = Atmosphere::us1976();
     let observer = 2200.0;
     let environment =
@@ -166,7 +166,7 @@ fn verify_muon_ring_is_frank_tamm_geometry() {
     let muons = 200;
     for muon in 0..muons {
         let mut stream = Stream::keyed(6, Stage::Image, &[muon]);
-        emit(&step, &environment.air, &yields, 1.0, &mut stream, |ray| {
+        emit(&step, &environment.air, &yields, 1.0, &Window::open(), &mut stream, |ray| {
             let landing = ray.position - ray.direction * (ray.position.z / ray.direction.z);
             let bin = (landing.x.hypot(landing.y) / 10.0) as usize;
             if bin < counts.len() {

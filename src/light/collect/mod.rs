@@ -13,5 +13,5 @@ pub use pads::{
     Basket, CollectSettings, Collected, Collector, PadDisc, SkyQuantum, Target, collected,
 };
 pub use pool::{PoolDensity, PoolRequest, pool_density};
-pub use rays::{Ray, emit};
+pub use rays::{Ray, Window, emit};
 pub use yields::Yields;

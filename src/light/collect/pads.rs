@@ -4,6 +4,7 @@ use nalgebra::Vector3;
 
 use crate::atmosphere::Atmosphere;
 use crate::consts::SPEED_OF_LIGHT_M_NS;
+use crate::light::cherenkov::largest_emission_angle_rad;
 use crate::light::column::{Detector, Transmission};
 use crate::numerics::{Stage, Stream};
 use crate::shower::Direction;
@@ -12,7 +13,7 @@ use crate::shower::cascade::{
     CascadeParticle, Environment, Ledger, TrackSink, TrackStep, transport,
 };
 
-use super::rays::{Ray, emit};
+use super::rays::{Ray, Window, emit};
 use super::yields::Yields;
 
 /// A collecting disc: a pad and the kind of telescope on it.
@@ -64,6 +65,8 @@ pub struct Collector {
     pointing: [Vector3<f64>; 3],
     cos_reach: f64,
     reach_rad: f64,
+    largest_cone_rad: f64,
+    window: Window,
 }
 
 /// Discs of all core positions in one grid on the plane z = 0.
@@ -99,8 +102,16 @@ impl Collector {
             settings.detectors,
         );
         let (across, along) = settings.pointing.transverse();
+        let [refractivity, _] = yields.air(settings.observer_altitude_m);
+        let largest_cone_rad = largest_emission_angle_rad(refractivity);
+        let window = Window {
+            source: settings.pointing.to_source(),
+            limit2: (settings.reach_rad + largest_cone_rad).powi(2),
+        };
         Self {
             yields,
+            largest_cone_rad,
+            window,
             axis: settings.axis,
             pointing: [across, along, settings.pointing.to_source()],
             cos_reach: settings.reach_rad.cos(),
@@ -158,6 +169,20 @@ impl Collector {
         [x - half, y - half, x + half, y + half]
     }
 
+    /// Whether light of a step can lie within the reach of the pointing: false only if the flight
+    /// is farther from it than reach, cone and five deviations of the wandering inside the step.
+    ///
+    /// Chords between unit vectors stand for angles: they are shorter, so nothing is lost.
+    #[inline]
+    fn may_see(&self, step: &TrackStep) -> bool {
+        let source = &self.pointing[2];
+        let first = (step.start_direction + source).norm_squared();
+        let last = (step.end_direction + source).norm_squared();
+        let turn = (step.end_direction - step.start_direction).norm();
+        let limit = self.reach_rad + self.largest_cone_rad + 2.5 * step.scatter_rad + 0.5 * turn;
+        first.min(last) < limit * limit
+    }
+
     /// Where the showers come from.
     pub fn axis(&self) -> Direction {
         self.axis
@@ -172,7 +197,7 @@ pub struct Basket<'a> {
     stream: Stream,
     core_time_ns: f64,
     hits: Vec<(u32, SkyQuantum)>,
-    /// Quanta drawn, whether they hit or not.
+    /// Quanta drawn, whether they hit or not; tracks that cannot be seen draw none.
     pub drawn: u64,
 }
 
@@ -189,9 +214,8 @@ impl<'a> Basket<'a> {
     }
 
     /// Sorts the hits by core and pad.
-    pub fn collected(mut self) -> Collected {
-        // Stable: quanta of one disc stay in the order they were made.
-        self.hits.sort_by_key(|hit| hit.0);
+    pub fn collected(self) -> Collected {
+        // Sorting by counting: quanta of one disc stay in the order they were made.
         let discs = self.target.discs.len();
         let mut first = vec![0_u32; discs + 1];
         for hit in &self.hits {
@@ -200,12 +224,15 @@ impl<'a> Basket<'a> {
         for disc in 0..discs {
             first[disc + 1] += first[disc];
         }
-        Collected {
-            pads: self.target.pads,
-            first,
-            quanta: self.hits.into_iter().map(|hit| hit.1).collect(),
-            drawn: self.drawn,
+        let mut next = first.clone();
+        let empty = SkyQuantum { x_deg: 0.0, y_deg: 0.0, time_ns: 0.0 };
+        let mut quanta = vec![empty; self.hits.len()];
+        for (disc, quantum) in self.hits {
+            let place = &mut next[disc as usize];
+            quanta[*place as usize] = quantum;
+            *place += 1;
         }
+        Collected { pads: self.target.pads, first, quanta, drawn: self.drawn }
     }
 }
 
@@ -292,8 +319,11 @@ fn catch(
 
 impl TrackSink for Basket<'_> {
     fn step(&mut self, step: &TrackStep) {
+        if !self.collector.may_see(step) {
+            return;
+        }
         let Self { collector, target, air, stream, core_time_ns, hits, drawn } = self;
-        emit(step, air, &collector.yields, 1.0, stream, |ray| {
+        emit(step, air, &collector.yields, 1.0, &collector.window, stream, |ray| {
             *drawn += 1;
             catch(ray, collector, target, *core_time_ns, hits);
         });

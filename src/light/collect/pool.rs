@@ -16,7 +16,7 @@ use crate::shower::cascade::{
 };
 use crate::shower::{Direction, Primary, Species};
 
-use super::rays::{Ray, emit};
+use super::rays::{Ray, Window, emit};
 use super::yields::Yields;
 
 /// What is asked for.
@@ -262,7 +262,7 @@ fn count(
 impl TrackSink for Rings<'_> {
     fn step(&mut self, step: &TrackStep) {
         let Self { air, yields, stream, to_source, share, bearing, bounds_m2, counts } = self;
-        emit(step, air, yields, *share, stream, |ray| {
+        emit(step, air, yields, *share, &Window::open(), stream, |ray| {
             count(ray, to_source, *bearing, bounds_m2, counts);
         });
     }

@@ -28,7 +28,24 @@ pub struct Ray {
     pub detector: usize,
 }
 
-/// Draws the quanta that a step emits, a share of them if `share` is below one.
+/// Which flight directions of the emitting particle are worth a quantum.
+#[derive(Clone, Copy, Debug)]
+pub struct Window {
+    /// Unit vector towards the middle of the window, against the flight.
+    pub source: Vector3<f64>,
+    /// Square of the largest chord between the flight and the opposite of `source`.
+    pub limit2: f64,
+}
+
+impl Window {
+    /// All directions.
+    pub fn open() -> Self {
+        Self { source: Vector3::z(), limit2: 5.0 }
+    }
+}
+
+/// Draws the quanta that a step emits, a share of them if `share` is below one; those of particles
+/// that fly outside the window are drawn in number but not made.
 ///
 /// The number is a Poisson deviate of the mean of every piece; places are uniform along the piece,
 /// flight directions follow the track's wandering inside the step, and the quantum leaves on the
@@ -39,6 +56,7 @@ pub fn emit(
     air: &AirTable,
     yields: &Yields,
     share: f64,
+    window: &Window,
     stream: &mut Stream,
     mut take: impl FnMut(&Ray),
 ) {
@@ -69,7 +87,10 @@ pub fn emit(
         let around = Around { middle: altitude, refractivity, delay, inverse2, worth, total };
         for _ in 0..count {
             let place = from + width * stream.uniform();
-            take(&ray(step, place, air, &around, stream));
+            let flight = flight(step, place, stream);
+            if (flight + window.source).norm_squared() < window.limit2 {
+                take(&ray(step, place, &flight, air, &around, stream));
+            }
         }
     }
 }
@@ -83,10 +104,25 @@ struct Around<'a> {
     total: f64,
 }
 
+/// Flight direction at a place inside a step.
+#[inline]
+fn flight(step: &TrackStep, place: f64, stream: &mut Stream) -> Vector3<f64> {
+    let mean = step.start_direction + (step.end_direction - step.start_direction) * place;
+    let mut flight = mean;
+    if step.scatter_rad > 0.0 {
+        let wander = step.scatter_rad * (place * (1.0 - place)).sqrt();
+        let (a, b) = (stream.normal() * wander, stream.normal() * wander);
+        let (across, up) = basis(&flight);
+        flight += across * a + up * b;
+    }
+    flight * (1.0 / flight.norm())
+}
+
 #[inline]
 fn ray(
     step: &TrackStep,
     place: f64,
+    flight: &Vector3<f64>,
     air: &AirTable,
     around: &Around<'_>,
     stream: &mut Stream,
@@ -97,20 +133,11 @@ fn ray(
     let rise = (height_m + air.observer_altitude_m() - around.middle) * (1.0 / 8000.0);
     let refractivity = around.refractivity * (1.0 - rise);
     let delay_m = around.delay + around.refractivity * 8000.0 * rise;
-    let mean = step.start_direction + (step.end_direction - step.start_direction) * place;
-    let mut flight = mean;
-    if step.scatter_rad > 0.0 {
-        let wander = step.scatter_rad * (place * (1.0 - place)).sqrt();
-        let (a, b) = (stream.normal() * wander, stream.normal() * wander);
-        let (across, up) = basis(&flight);
-        flight += across * a + up * b;
-    }
-    flight *= 1.0 / flight.norm();
     let index = 1.0 + refractivity;
     let cosine = (1.0 / (index * index * (1.0 - around.inverse2))).sqrt().min(1.0);
     let sine = (1.0 - cosine * cosine).sqrt();
     let (cos, sin) = circle(stream);
-    let (across, up) = basis(&flight);
+    let (across, up) = basis(flight);
     let direction = flight * cosine + (across * cos + up * sin) * sine;
     let detector = if around.worth.len() == 1 {
         0

@@ -38,7 +38,7 @@ fn provenance(settings: &CalibrationSettings, atmosphere: &str) -> String {
         "# Made by the reference cascade of this program, version {}, seed {}, atmosphere {},\n\
          # vertical, no magnetic field, particles above {} GeV.\n\
          # Emitters from photon showers: {}; age windows +-{}.\n\
-         # Development from photons and electrons: {}.\n",
+         # Development from photons and electrons: {}; rows of 0 showers by theory.\n",
         env!("CARGO_PKG_VERSION"),
         settings.seed,
         atmosphere,
