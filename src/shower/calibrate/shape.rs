@@ -23,7 +23,7 @@ pub fn moments_fit(profile: &[f64], start_g_cm2: f64) -> Option<GaisserHillas> {
     let variance = second / sum - mean * mean;
     let length = variance / mean;
     let power = mean / length - 1.0;
-    if !(power > 0.2) || !(length > 0.0) {
+    if length <= 0.0 || power <= 0.2 || power.is_nan() {
         return None;
     }
     let max = start_g_cm2 + power * length;
