@@ -120,7 +120,8 @@ pub fn pair_cm2_g(photon_gev: f64) -> f64 {
     FINE_STRUCTURE * radius2_per_mol_cm2() * sum
 }
 
-/// Complete-screening limit of [`pair_cm2_g`]: (7/9 L - 1/54 ...) as the integral of the spectrum.
+/// Complete-screening limit of [`pair_cm2_g`]: 28/9 (L - f) - 2/27 per nucleus and electron weight,
+/// the integral of the spectrum (Tsai 1974).
 pub fn pair_limit_cm2_g() -> f64 {
     let sum: f64 = AIR
         .iter()

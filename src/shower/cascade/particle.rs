@@ -208,8 +208,6 @@ pub struct Ledger {
     pub steps: u64,
     /// Number of photons followed.
     pub photons: u64,
-    /// Charged particles turned upward beyond the top of the tables or lost sideways.
-    pub out_of_tables: u64,
 }
 
 impl Ledger {

@@ -14,8 +14,7 @@ use super::photon;
 use super::rates::Rates;
 use super::vertex::Vertex;
 
-/// Curvature of a track of unit charge: c / (1e15 eV ...) as rad per metre, per uT, times GeV/c.
-///
+/// Curvature of a track of unit charge, rad per metre and uT, times momentum in GeV/c:
 /// p [GeV/c] = 0.299792458 B [T] r [m].
 pub const CURVATURE_GEV_UT_M: f64 = 0.299_792_458e-6;
 
