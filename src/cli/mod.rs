@@ -8,6 +8,7 @@ mod failure;
 mod out;
 mod plan;
 mod progress;
+mod search;
 mod table;
 
 use clap::{Parser, Subcommand};
@@ -16,6 +17,7 @@ pub use failure::Failure;
 pub use out::print;
 pub use plan::PlanArguments;
 pub use progress::Bar;
+pub use search::SearchArguments;
 
 /// Plans arrays of imaging air-shower telescopes.
 #[derive(Debug, Parser)]
@@ -32,6 +34,8 @@ const EXIT_CODES: &str =
 enum Command {
     /// Compare the layouts of a study: simulate, rank, report.
     Plan(PlanArguments),
+    /// Find the best layouts on the ground of a study: simulate pads, search, report.
+    Search(SearchArguments),
 }
 
 /// Runs a command.
@@ -41,5 +45,6 @@ enum Command {
 pub fn run(arguments: Arguments) -> Result<(), Failure> {
     match arguments.command {
         Command::Plan(arguments) => plan::run(&arguments),
+        Command::Search(arguments) => search::run(&arguments),
     }
 }

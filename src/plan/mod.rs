@@ -3,7 +3,10 @@
 mod models;
 mod pool;
 mod rows;
+mod search;
 mod setup;
+
+pub use search::{Best, SearchError, Wanted, search_ground};
 
 use std::collections::BTreeMap;
 

@@ -21,5 +21,5 @@ pub use result::{
     Approximation, AreaRow, Counter, KindRow, LayoutMap, LayoutRow, Model, PlacedTelescope,
     PlanResult, PoolRow, Provenance, RateRow, SiteSummary,
 };
-pub use stage::{ReportError, check_destination, files, write_all};
+pub use stage::{ReportError, check_destination, files, write_all, write_files};
 pub use tables::{Table, effective_area_table, light_pool_table, ranking_table, rate_table};

@@ -109,7 +109,14 @@ pub fn files(result: &PlanResult) -> Result<Vec<(String, Vec<u8>)>, ReportError>
 /// # Errors
 /// [`ReportError`] if a file cannot be made, written or renamed.
 pub fn write_all(folder: &Path, result: &PlanResult) -> Result<(), ReportError> {
-    let files = files(result)?;
+    write_files(folder, &files(result)?)
+}
+
+/// Writes files into a folder as [`write_all`] does.
+///
+/// # Errors
+/// [`ReportError`] if a file cannot be written or renamed.
+pub fn write_files(folder: &Path, files: &[(String, Vec<u8>)]) -> Result<(), ReportError> {
     let destination = |cause: std::io::Error| ReportError::Destination {
         path: folder.to_owned(),
         problem: format!("cannot be written: {cause}"),
@@ -117,7 +124,7 @@ pub fn write_all(folder: &Path, result: &PlanResult) -> Result<(), ReportError> 
     fs::create_dir_all(folder).map_err(destination)?;
     let staging = folder.join(format!(".staging-{}", std::process::id()));
     fs::create_dir(&staging).map_err(destination)?;
-    let written = place(folder, &staging, &files);
+    let written = place(folder, &staging, files);
     // Left-overs of a failed run are of no use to anybody; the first error is the one to tell.
     let removed = fs::remove_dir_all(&staging);
     written?;

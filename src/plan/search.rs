@@ -1,0 +1,203 @@
+//! A study's ground as pads, simulated once, for a search over sets of them.
+
+use std::sync::atomic::AtomicBool;
+
+use thiserror::Error;
+
+use crate::layout::constraint::holds;
+use crate::layout::cost::KindPrice;
+use crate::layout::generator::Pattern;
+use crate::layout::stages::{build_up, front, losses};
+use crate::layout::{
+    Condition, Found, LayoutError, Objective, Planes, Problem, Settings, Tariff, search,
+};
+use crate::rates;
+use crate::study::{Layout, Placed, Study};
+
+use super::{PlanError, Progress, Weighted, setup, simulate};
+
+/// What to search for.
+#[derive(Clone, Debug, PartialEq)]
+pub struct Wanted {
+    /// Most telescopes.
+    pub telescopes: usize,
+    /// Most that a layout may cost, in the unit of the kinds' costs.
+    pub budget: Option<f64>,
+    /// Distance of neighbouring pads, m.
+    pub pad_spacing_m: f64,
+    /// Telescopes that must fire.
+    pub condition: usize,
+}
+
+/// A search that cannot be done.
+#[derive(Debug, Error)]
+pub enum SearchError {
+    /// The study cannot be simulated.
+    #[error(transparent)]
+    Plan(#[from] PlanError),
+    /// No layout is possible.
+    #[error(transparent)]
+    Layout(#[from] LayoutError),
+    /// The study has no ground to search.
+    #[error("[site] boundary_enu_m: missing: a search needs the outline of the ground")]
+    NoBoundary,
+    /// Not enough pads.
+    #[error("{pads} pads {spacing_m} m apart fit the boundary; at least {least} are needed")]
+    FewPads {
+        /// Pads inside.
+        pads: usize,
+        /// Their spacing.
+        spacing_m: f64,
+        /// Pads needed.
+        least: usize,
+    },
+}
+
+/// The best layout of one number of telescopes.
+#[derive(Clone, Debug, PartialEq)]
+pub struct Best {
+    /// Its telescopes.
+    pub telescopes: Vec<Placed>,
+    /// Rate on the half of the showers that was searched, Hz: optimistic.
+    pub searched_hz: f64,
+    /// Rate on the other half, Hz.
+    pub reported_hz: f64,
+    /// Sum of the kinds' costs.
+    pub cost: f64,
+    /// Whether no cheaper one of these has a higher rate.
+    pub on_front: bool,
+    /// Place of each telescope in the build-up and the rate with it and all before it, Hz.
+    pub build_up: Vec<(Placed, f64)>,
+    /// Share of the rate lost when each telescope is out, in the order of `telescopes`.
+    pub losses: Vec<f64>,
+}
+
+/// Searches the ground of a study: the best layouts of each number of telescopes up to the wanted,
+/// by gamma trigger rate, from half of the showers, with rates from the other half.
+///
+/// # Errors
+/// [`SearchError`].
+pub fn search_ground(
+    study: &Study,
+    wanted: &Wanted,
+    stop: &AtomicBool,
+    progress: &dyn Progress,
+) -> Result<Vec<Best>, SearchError> {
+    let pads = pads(study, wanted)?;
+    let mut ground = study.clone();
+    ground.layouts = vec![pads];
+    ground.backgrounds.clear();
+    let spectra = setup::spectra(&ground).map_err(PlanError::from)?;
+    progress.stage("light tables", 1);
+    let light = setup::light_model(&ground);
+    progress.advance(1);
+    let planned = simulate(&ground, &light, spectra, progress);
+    let planes =
+        planes(&planned.gamma, |column| planned.thresholds_pe[planned.columns[column].kind]);
+    let problem = |parity: u32| Problem {
+        positions_m: planned.columns.iter().map(|column| column.position_m).collect(),
+        kinds: planned.columns.iter().map(|column| column.kind).collect(),
+        gamma: planes.half(parity),
+        backgrounds: Vec::new(),
+        condition: Condition::any(wanted.condition),
+        objective: Objective::GammaRate { spectrum: 0 },
+        tariff: Tariff {
+            kinds: study
+                .kinds
+                .iter()
+                .map(|kind| KindPrice { telescope: kind.cost, pad: 0.0 })
+                .collect(),
+            ..Tariff::default()
+        },
+        least_distance_m: 0.5 * wanted.pad_spacing_m,
+        budget: wanted.budget,
+    };
+    let (searched, reported) = (problem(0), problem(1));
+    progress.stage("search", wanted.telescopes as u64);
+    let mut best = Vec::new();
+    for telescopes in wanted.condition..=wanted.telescopes {
+        let settings =
+            Settings { telescopes, fixed: Vec::new(), restarts: 8, steps: 4_000, seed: study.seed };
+        match search(&searched, &settings, stop) {
+            Ok(found) => best.push(described(&found[0], &searched, &reported)),
+            // More telescopes than the budget allows: the smaller layouts stand.
+            Err(LayoutError::Impossible { .. }) if !best.is_empty() => break,
+            Err(error) => return Err(error.into()),
+        }
+        progress.advance(1);
+    }
+    let points: Vec<(f64, f64)> = best.iter().map(|b| (b.reported_hz, b.cost)).collect();
+    for index in front(&points) {
+        best[index].on_front = true;
+    }
+    Ok(best)
+}
+
+/// Every kind on every point of a triangular grid on allowed ground, as one layout.
+fn pads(study: &Study, wanted: &Wanted) -> Result<Layout, SearchError> {
+    let boundary = &study.site.boundary_enu_m;
+    if boundary.is_empty() {
+        return Err(SearchError::NoBoundary);
+    }
+    let spacing_m = wanted.pad_spacing_m;
+    let reach = boundary.iter().map(|p| p[0].hypot(p[1])).fold(0.0, f64::max) / spacing_m;
+    // Area of the disc over that of a cell, and a rim.
+    let count = (core::f64::consts::PI * (reach + 2.0).powi(2) / 0.75_f64.sqrt()).ceil() as usize;
+    let free = |point: &[f64; 2]| {
+        let excluded = study.site.exclusions.iter().any(|e| holds(&e.outline_enu_m, *point));
+        holds(boundary, *point) && !excluded
+    };
+    let grid = Pattern::Triangular.positions_m(count, spacing_m);
+    let points: Vec<[f64; 2]> = grid.into_iter().filter(free).collect();
+    let least = wanted.telescopes.max(2);
+    if points.len() < least {
+        return Err(SearchError::FewPads { pads: points.len(), spacing_m, least });
+    }
+    let on_pad = |p: &[f64; 2]| {
+        let enu_m = [p[0], p[1], 0.0];
+        (0..study.kinds.len()).map(move |kind| Placed { kind, enu_m })
+    };
+    Ok(Layout {
+        name: "pads".into(),
+        telescopes: points.iter().flat_map(on_pad).collect(),
+        condition: wanted.condition,
+        window_ns: study.layouts.first().map_or(50.0, |layout| layout.window_ns),
+        line: 0,
+    })
+}
+
+/// Bit planes of all columns; words are numbered within their ring, so that the halves of a table
+/// hold alternate energies of every ring.
+fn planes(gamma: &Weighted, threshold_pe: impl Fn(usize) -> f64) -> Planes {
+    let sample = &gamma.sample;
+    let mut numbers = std::collections::BTreeMap::new();
+    let mut number = |ring: usize| {
+        let next = numbers.entry(ring).or_insert(0_u32);
+        *next += 1;
+        *next - 1
+    };
+    Planes {
+        columns: (0..sample.pads.len()).map(|c| sample.plane(c, threshold_pe(c))).collect(),
+        weights: vec![rates::event_rates(&sample.words, &gamma.spectrum)],
+        showers: sample.words.iter().map(|word| number(word.ring)).collect(),
+    }
+}
+
+fn described(found: &Found, searched: &Problem, reported: &Problem) -> Best {
+    let placed = |column: usize| Placed {
+        kind: searched.kinds[column],
+        enu_m: searched.positions_m[column],
+    };
+    Best {
+        telescopes: found.members.iter().map(|&column| placed(column)).collect(),
+        searched_hz: found.score,
+        reported_hz: reported.score(&found.members),
+        cost: searched.cost(&found.members),
+        on_front: false,
+        build_up: build_up(reported, &found.members, &[])
+            .into_iter()
+            .map(|(column, rate)| (placed(column), rate))
+            .collect(),
+        losses: losses(reported, &found.members),
+    }
+}
