@@ -51,8 +51,8 @@ impl Dimension {
 
 /// Where the unit begins: after the longest prefix that reads as a number.
 fn unit_start(text: &str) -> usize {
-    let ends = text.char_indices().map(|(index, _)| index).chain([text.len()]);
-    ends.filter(|&end| text[..end].trim().parse::<f64>().is_ok()).last().unwrap_or(0)
+    let mut ends = text.char_indices().map(|(index, _)| index).chain([text.len()]).rev();
+    ends.find(|&end| text[..end].trim().parse::<f64>().is_ok()).unwrap_or(0)
 }
 
 macro_rules! quantity {

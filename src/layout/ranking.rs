@@ -34,7 +34,7 @@ pub fn rank(word_scores: &[Vec<f64>], resamples: usize, seed: u64) -> Vec<Ranked
     let score = |layout: usize| word_scores[layout].iter().sum::<f64>();
     order.sort_by(|&a, &b| score(b).total_cmp(&score(a)).then(a.cmp(&b)));
     let words = word_scores.first().map_or(0, Vec::len);
-    let mut draws = vec![vec![0.0; resamples]; order.len()];
+    let mut draws: Vec<Vec<f64>> = vec![Vec::with_capacity(resamples); order.len()];
     let mut counts = vec![0_u32; words];
     for resample in 0..resamples {
         let mut stream = Stream::keyed(seed, Stage::Bootstrap, &[resample as u64]);
@@ -42,9 +42,9 @@ pub fn rank(word_scores: &[Vec<f64>], resamples: usize, seed: u64) -> Vec<Ranked
         for _ in 0..words {
             counts[(stream.uniform() * words as f64) as usize] += 1;
         }
-        for (place, &layout) in order.iter().enumerate() {
-            draws[place][resample] =
-                counts.iter().zip(&word_scores[layout]).map(|(&n, s)| f64::from(n) * s).sum();
+        for (draws, &layout) in draws.iter_mut().zip(&order) {
+            let scores = counts.iter().zip(&word_scores[layout]);
+            draws.push(scores.map(|(&n, score)| f64::from(n) * score).sum());
         }
     }
     let ahead = |first: usize, second: usize| {

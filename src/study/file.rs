@@ -206,12 +206,10 @@ fn ranking(section: Option<Section<'_>>, kinds: &[TelescopeKind]) -> Result<Rank
         return Ok(Ranking { score: SCORES[0].into(), resamples: 400 });
     };
     let score = SCORES[section.choice_or("score", &SCORES, 0)?].to_owned();
-    if let Some(free) = kinds.iter().find(|kind| !(kind.cost > 0.0)) {
-        if score == SCORES[1] {
-            let problem =
-                format!("needs a cost above 0 for every telescope; {} has none", free.name);
-            return Err(section.wrong("score", problem));
-        }
+    let free = kinds.iter().find(|kind| !(kind.cost > 0.0));
+    if let Some(free) = free.filter(|_| score == SCORES[1]) {
+        let problem = format!("needs a cost above 0 for every telescope; {} has none", free.name);
+        return Err(section.wrong("score", problem));
     }
     let resamples = section.count_or("resamples", 20, 100_000, 400)? as usize;
     section.finish()?;

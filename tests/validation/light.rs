@@ -6,8 +6,9 @@ use nightpool::light::cherenkov::{
 };
 use nightpool::light::{Detector, LightModel, LightSettings, Pad};
 use nightpool::numerics::{Stage, Stream};
-use nightpool::shower::profile::hillas::{self, Spread};
+use nightpool::shower::cascade::CascadeSpecies;
 use nightpool::shower::profile::longitudinal::{Development, greisen};
+use nightpool::shower::profile::{DevelopmentTable, EmitterTable};
 
 /// Greisen 1956: sizes of a 1 TeV shower with E_c = 85 MeV at depths in radiation lengths, and the
 /// maximum at five energies, evaluated from the published formula (shared reference sheet,
@@ -142,7 +143,8 @@ fn validate_ring_radius_by_altitude() {
 fn validate_pool_preuss2002_order_and_shape() {
     let air = Atmosphere::us1976();
     let extinction = nightpool::atmosphere::Extinction::default();
-    let table = hillas::table(Spread::FULL, 4_000, 1);
+    let table = EmitterTable::shipped().unwrap();
+    let developments = DevelopmentTable::shipped().unwrap();
     let settings = LightSettings {
         atmosphere: &air,
         transmission: &|h, z, nm| extinction.transmission(&air, h, 2_200.0, z, nm),
@@ -159,8 +161,9 @@ fn validate_pool_preuss2002_order_and_shape() {
         let mut sums = vec![0.0; distances.len()];
         for shower in 0..1_000 {
             let mut stream = Stream::keyed(7, Stage::Shower, &[shower]);
-            let start = Development::photon_start_g_cm2(&mut stream);
-            let footprint = model.footprint(&axis, &Development::draw(energy, start, &mut stream));
+            let start = developments.photon_start_g_cm2(energy, &mut stream);
+            let shower = developments.draw(CascadeSpecies::Gamma, energy, start, &mut stream);
+            let footprint = model.footprint(&axis, &shower);
             for (sum, &distance_m) in sums.iter_mut().zip(distances) {
                 let pad = Pad { distance_m, azimuth_rad: 0.0, rise_m: 0.0 };
                 *sum += model.density_m2(&footprint, 0, &pad) / 1_000.0;

@@ -69,7 +69,7 @@ fn settings(telescopes: usize, seed: u64) -> Settings {
     Settings { telescopes, fixed: Vec::new(), restarts: 4, steps: 1_000, seed }
 }
 
-const RUN: AtomicBool = AtomicBool::new(false);
+static RUN: AtomicBool = AtomicBool::new(false);
 
 #[test]
 fn verify_votes_are_a_direct_loop_over_events() {
@@ -298,7 +298,7 @@ fn verify_local_and_geodetic_coordinates_are_inverse_and_geojson_returns_layouts
         Member { position_m: [90.0, 55.0, -2.0], kind: 1 },
     ];
     let layout = Candidate { name: "two".into(), members, condition: Condition::any(2) };
-    let text = to_geojson(&[layout.clone()], &kinds, site);
+    let text = to_geojson(std::slice::from_ref(&layout), &kinds, site);
     let read = from_geojson(&text, &kinds, site).unwrap();
     assert_eq!(read[0].key(), layout.key());
     assert_eq!(read[0].condition, layout.condition);

@@ -87,8 +87,11 @@ fn kind(name: &str) -> KindRow {
 }
 
 fn add_layout(result: &mut PlanResult, index: usize) {
-    let name =
-        format!("{} {}", if index % 2 == 0 { "broad four" } else { "slim nine" }, index * 10);
+    let name = format!(
+        "{} {}",
+        if index.is_multiple_of(2) { "broad four" } else { "slim nine" },
+        index * 10
+    );
     let rate = 0.6 - 0.035 * index as f64;
     result.ranking.push(LayoutRow {
         rank: index + 1,
