@@ -7,6 +7,7 @@
 mod failure;
 mod out;
 mod plan;
+mod pool;
 mod progress;
 mod search;
 mod table;
@@ -36,6 +37,8 @@ enum Command {
     Plan(PlanArguments),
     /// Find the best layouts on the ground of a study: simulate pads, search, report.
     Search(SearchArguments),
+    /// Print light density against distance from the shower axis.
+    Pool(pool::PoolArguments),
 }
 
 /// Runs a command.
@@ -45,6 +48,7 @@ enum Command {
 pub fn run(arguments: Arguments) -> Result<(), Failure> {
     match arguments.command {
         Command::Plan(arguments) => plan::run(&arguments),
+        Command::Pool(arguments) => pool::run(&arguments),
         Command::Search(arguments) => search::run(&arguments),
     }
 }

@@ -132,7 +132,7 @@ impl Direction {
     }
 
     /// Two unit vectors that complete [`Direction::to_source`] to a right-handed frame
-    /// (`across`, `along`, to source). `across` is horizontal (east for a source in the north),
+    /// (`across`, `along`, to source). `across` is horizontal (west for a source in the north),
     /// `along` points upward. Camera offsets x and y are measured along them, as seen on the sky
     /// looking towards the source.
     pub fn transverse(self) -> (Vector3<f64>, Vector3<f64>) {
