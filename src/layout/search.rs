@@ -1,5 +1,6 @@
 //! Search over sets of columns: annealing, then exchange to a local best, from many starts.
 
+use std::collections::HashMap;
 use std::sync::atomic::{AtomicBool, Ordering};
 
 use rayon::prelude::*;
@@ -47,7 +48,7 @@ impl Found {
 
 /// The best layouts found, best first, no two the same: one a start at most.
 ///
-/// Each start anneals over exchanges of one telescope with a temperature that falls from 3 % of
+/// Each start anneals over exchanges of one telescope and shifts of the whole with a temperature that falls from 3 % of
 /// the score to 0.01 %, then takes the best exchange of one telescope until none helps, and on small
 /// problems the best exchange of two. Starts run in parallel, each
 /// from its own stream, so the result does not depend on the number of threads. Setting `stop`
@@ -150,12 +151,15 @@ fn anneal(
 ) -> Vec<usize> {
     const HOT: f64 = 0.03;
     const COLD: f64 = 1e-4;
+    /// Share of steps that move the whole array: single exchanges cannot carry a good shape along.
+    const SHIFTS: f64 = 0.3;
     let movable = members.len() - settings.fixed.len();
     if movable == 0 {
         return members;
     }
     let mut score = problem.score(&members);
     let mut best = (members.clone(), score);
+    let spots = spots(problem);
     for step in 0..settings.steps {
         if step % 64 == 0 && stop.load(Ordering::Relaxed) {
             break;
@@ -163,26 +167,77 @@ fn anneal(
         let cooled = step as f64 / settings.steps as f64;
         let temperature = best.1.abs() * HOT * (COLD / HOT).powf(cooled);
         let place = settings.fixed.len() + draw(stream, movable);
-        let newcomer = draw(stream, problem.kinds.len());
-        let old = members[place];
-        if !fits(problem, &members, place, newcomer) {
+        let newcomer = newcomer(problem, members[place], stream);
+        let mut with = members.clone();
+        if stream.uniform() < SHIFTS {
+            let Some(shifted) = shifted(problem, &spots, &members, place, newcomer) else {
+                continue;
+            };
+            with[settings.fixed.len()..].copy_from_slice(&shifted[settings.fixed.len()..]);
+        } else {
+            with[place] = newcomer;
+        }
+        if with == members || !all_fit(problem, &with) {
             continue;
         }
-        members[place] = newcomer;
-        let proposed = problem.score(&members);
+        let proposed = problem.score(&with);
         // Everything is accepted while nothing triggers yet.
         let accepted =
             proposed >= score || stream.uniform() < ((proposed - score) / temperature).exp();
-        if !accepted || !problem.affordable(&members) {
-            members[place] = old;
+        if !accepted || !problem.affordable(&with) {
             continue;
         }
+        members = with;
         score = proposed;
         if score > best.1 {
             best = (members.clone(), score);
         }
     }
     best.0
+}
+
+/// Any column, or as often one near the old: the nearest of 24 drawn.
+fn newcomer(problem: &Problem, old: usize, stream: &mut Stream) -> usize {
+    const NEAR: usize = 24;
+    let columns = problem.kinds.len();
+    let draws = if stream.uniform() < 0.5 { 1 } else { NEAR };
+    let p = problem.positions_m[old];
+    let far = |column: usize| {
+        let q = problem.positions_m[column];
+        if column == old { f64::INFINITY } else { (p[0] - q[0]).hypot(p[1] - q[1]) }
+    };
+    let drawn = (0..draws).map(|_| draw(stream, columns));
+    drawn.min_by(|&a, &b| far(a).total_cmp(&far(b))).unwrap_or(old)
+}
+
+/// Columns by kind and spot, to the decimetre.
+type Spots = HashMap<(usize, [i64; 2]), usize>;
+
+fn spot(position_m: [f64; 3]) -> [i64; 2] {
+    [position_m[0], position_m[1]].map(|metres| (metres * 10.0).round() as i64)
+}
+
+fn spots(problem: &Problem) -> Spots {
+    let columns = problem.kinds.iter().zip(&problem.positions_m).enumerate();
+    columns.map(|(column, (kind, position))| ((*kind, spot(*position)), column)).collect()
+}
+
+/// All members moved as the one at `place` would move to the spot of `newcomer`; nothing if one of
+/// them finds no pad there.
+fn shifted(
+    problem: &Problem,
+    spots: &Spots,
+    members: &[usize],
+    place: usize,
+    newcomer: usize,
+) -> Option<Vec<usize>> {
+    let (from, to) = (problem.positions_m[members[place]], problem.positions_m[newcomer]);
+    let moved = members.iter().map(|&member| {
+        let p = problem.positions_m[member];
+        let there = [p[0] + to[0] - from[0], p[1] + to[1] - from[1], 0.0];
+        spots.get(&(problem.kinds[member], spot(there))).copied()
+    });
+    moved.collect()
 }
 
 fn fits(problem: &Problem, members: &[usize], place: usize, newcomer: usize) -> bool {

@@ -116,8 +116,13 @@ pub fn search_ground(
     progress.stage("search", wanted.telescopes as u64);
     let mut best = Vec::new();
     for telescopes in wanted.condition..=wanted.telescopes {
-        let settings =
-            Settings { telescopes, fixed: Vec::new(), restarts: 8, steps: 4_000, seed: study.seed };
+        let settings = Settings {
+            telescopes,
+            fixed: Vec::new(),
+            restarts: 12,
+            steps: 30_000,
+            seed: study.seed,
+        };
         match search(&searched, &settings, stop) {
             Ok(found) => best.push(described(&found[0], &searched, &reported)),
             // More telescopes than the budget allows: the smaller layouts stand.
