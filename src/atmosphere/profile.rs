@@ -8,6 +8,7 @@ use super::refraction::{
     STANDARD_CO2_PPM, dry_density_ratio, standard_group_refractivity, standard_refractivity,
 };
 use super::standard;
+use super::table::Profile;
 
 /// An atmosphere that cannot be had.
 #[derive(Clone, Debug, Error, PartialEq)]
@@ -18,9 +19,39 @@ pub enum AtmosphereError {
         /// What was asked for.
         name: String,
         /// The names there are.
-        known: &'static str,
+        known: String,
+    },
+    /// A row of a table that is wrong.
+    #[error("{name}, line {line}: {problem}")]
+    Row {
+        /// The table.
+        name: String,
+        /// Its line, from 1.
+        line: usize,
+        /// What is wrong.
+        problem: String,
     },
 }
+
+/// The air at one altitude.
+#[derive(Clone, Copy, Debug)]
+pub(super) struct Level {
+    pub temperature_k: f64,
+    pub pressure_pa: f64,
+    pub density_kg_m3: f64,
+    /// Refractivity over that of standard dry air.
+    pub index_density: f64,
+}
+
+/// The tables that ship.
+const TABLES: [(&str, &str); 6] = [
+    ("tropical", include_str!("../../atmospheres/tropical.csv")),
+    ("midlatitude_summer", include_str!("../../atmospheres/midlatitude_summer.csv")),
+    ("midlatitude_winter", include_str!("../../atmospheres/midlatitude_winter.csv")),
+    ("subarctic_summer", include_str!("../../atmospheres/subarctic_summer.csv")),
+    ("subarctic_winter", include_str!("../../atmospheres/subarctic_winter.csv")),
+    ("us_standard_afgl", include_str!("../../atmospheres/us_standard_afgl.csv")),
+];
 
 /// Top of the tables, m.
 const TOP_M: f64 = 110_000.0;
@@ -43,29 +74,15 @@ pub struct Atmosphere {
 impl Atmosphere {
     /// The US Standard Atmosphere 1976: dry air with 450 ppm of carbon dioxide.
     pub fn us1976() -> Self {
-        let count = ((TOP_M - BOTTOM_M) / STEP_M) as usize + 1;
-        let states: Vec<standard::State> =
-            (0..count).map(|i| standard::state(BOTTOM_M + STEP_M * i as f64)).collect();
-        let table = |value: &dyn Fn(&standard::State) -> f64| {
-            UniformTable::new(BOTTOM_M, TOP_M, count, |altitude| {
-                value(&states[((altitude - BOTTOM_M) / STEP_M).round() as usize])
-            })
-        };
-        let log_density = table(&|state| state.density_kg_m3.ln());
-        let depths = depths(&states);
-        let log_depth = UniformTable::new(BOTTOM_M, TOP_M, count, |altitude| {
-            depths[((altitude - BOTTOM_M) / STEP_M).round() as usize].ln()
-        });
-        Self {
-            name: "us1976".into(),
-            log_depth,
-            log_pressure: table(&|state| state.pressure_pa.ln()),
-            temperature: table(&|state| state.temperature_k),
-            log_index_density: table(&|state| {
-                dry_density_ratio(state.temperature_k, state.pressure_pa).ln()
-            }),
-            log_density,
-        }
+        Self::of("us1976", |altitude| {
+            let state = standard::state(altitude);
+            Level {
+                temperature_k: state.temperature_k,
+                pressure_pa: state.pressure_pa,
+                density_kg_m3: state.density_kg_m3,
+                index_density: dry_density_ratio(state.temperature_k, state.pressure_pa),
+            }
+        })
     }
 
     /// A profile known by name.
@@ -73,9 +90,44 @@ impl Atmosphere {
     /// # Errors
     /// [`AtmosphereError::Unknown`], listing the names there are.
     pub fn named(name: &str) -> Result<Self, AtmosphereError> {
-        match name {
-            "us1976" => Ok(Self::us1976()),
-            _ => Err(AtmosphereError::Unknown { name: name.into(), known: "us1976" }),
+        if name == "us1976" {
+            return Ok(Self::us1976());
+        }
+        match TABLES.iter().find(|(known, _)| *known == name) {
+            Some((_, text)) => Self::from_text(name, text),
+            None => {
+                let tables = TABLES.iter().map(|(known, _)| *known);
+                let known: Vec<&str> = ["us1976"].into_iter().chain(tables).collect();
+                Err(AtmosphereError::Unknown { name: name.into(), known: known.join(", ") })
+            }
+        }
+    }
+
+    /// A tabulated profile in the CSV form of `atmospheres/*.csv`; `name` is for messages.
+    ///
+    /// # Errors
+    /// [`AtmosphereError::Row`], naming the line.
+    pub fn from_text(name: &str, text: &str) -> Result<Self, AtmosphereError> {
+        let profile = Profile::parse(name, text)?;
+        Ok(Self::of(name, |altitude| profile.level(altitude)))
+    }
+
+    fn of(name: &str, level: impl Fn(f64) -> Level) -> Self {
+        let count = ((TOP_M - BOTTOM_M) / STEP_M) as usize + 1;
+        let levels: Vec<Level> =
+            (0..count).map(|index| level(BOTTOM_M + STEP_M * index as f64)).collect();
+        let depths = depths(&levels);
+        let place = |altitude: f64| ((altitude - BOTTOM_M) / STEP_M).round() as usize;
+        let table = |value: &dyn Fn(usize) -> f64| {
+            UniformTable::new(BOTTOM_M, TOP_M, count, |altitude| value(place(altitude)))
+        };
+        Self {
+            name: name.into(),
+            log_depth: table(&|index| depths[index].ln()),
+            log_pressure: table(&|index| levels[index].pressure_pa.ln()),
+            temperature: table(&|index| levels[index].temperature_k),
+            log_index_density: table(&|index| levels[index].index_density.ln()),
+            log_density: table(&|index| levels[index].density_kg_m3.ln()),
         }
     }
 
@@ -138,7 +190,7 @@ impl Atmosphere {
 }
 
 /// Depth of each grid point: exact integral of an exponential between points, from the top down.
-fn depths(states: &[standard::State]) -> Vec<f64> {
+fn depths(states: &[Level]) -> Vec<f64> {
     let last = states.len() - 1;
     let mut depths = vec![0.0; states.len()];
     let scale_m = 6_000.0;

@@ -18,7 +18,7 @@ use super::table::ranking_text;
 pub struct PlanArguments {
     /// The study file (TOML).
     study: PathBuf,
-    /// Folder for the report [default: reports/<name of the study>].
+    /// Folder for the report [default: reports/NAME-OF-STUDY].
     #[arg(long, value_name = "DIR")]
     out: Option<PathBuf>,
     /// Number of threads [default: one a core]. Results do not depend on it.

@@ -32,7 +32,7 @@ pub struct SearchArguments {
     /// Distance of neighbouring pads.
     #[arg(long, value_name = "LENGTH", default_value = "80m", value_parser = pad_spacing)]
     pad_spacing: f64,
-    /// Folder for the report [default: reports/<name of the study>-search].
+    /// Folder for the report [default: reports/NAME-OF-STUDY-search].
     #[arg(long, value_name = "DIR")]
     out: Option<PathBuf>,
     /// No progress, no table: errors only.

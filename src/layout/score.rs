@@ -1,6 +1,6 @@
 //! The array's vote and weighted counts of it, fast.
 //!
-//! Planes are read in blocks of [`BLOCK`] words. A block of bit-sliced counters stays in the first
+//! Planes are read in blocks of `BLOCK` words. A block of bit-sliced counters stays in the first
 //! cache, and loops over its lanes have fixed length, so the compiler turns them into vector
 //! instructions. Counts by word are exact; rates are summed in the order of words.
 

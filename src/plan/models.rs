@@ -8,7 +8,7 @@ use super::Weighted;
 
 pub fn models(study: &Study, gamma: &Spectrum, backgrounds: &[Weighted]) -> Vec<Model> {
     let mut models = vec![
-        ("air profile", "U.S. Standard Atmosphere 1976, NOAA/NASA/USAF"),
+        ("air profile", air_profile(study)),
         ("refractive index of air", "Ciddor 1996, Appl. Opt. 35, 1566"),
         ("light yield and emission angle", "Frank & Tamm 1937, Dokl. Akad. Nauk SSSR 14, 107"),
         ("shower profile", "Gaisser & Hillas 1977, Proc. 15th ICRC 8, 353"),
@@ -48,6 +48,18 @@ pub fn models(study: &Study, gamma: &Spectrum, backgrounds: &[Weighted]) -> Vec<
         models.push(own(purpose, &weighted.spectrum.source));
     }
     models
+}
+
+/// Where the study's air comes from.
+fn air_profile(study: &Study) -> &'static str {
+    let name = study.air.atmosphere.name();
+    if name == "us1976" {
+        "U.S. Standard Atmosphere 1976, NOAA/NASA/USAF"
+    } else if name.contains(['.', '/']) {
+        "a table named in the study"
+    } else {
+        "Anderson et al. 1986, AFGL Atmospheric Constituent Profiles, AFGL-TR-86-0110"
+    }
 }
 
 pub fn approximations(study: &Study) -> Vec<Approximation> {

@@ -1,7 +1,5 @@
 //! Air, night sky, pointing, spectra.
 
-use std::path::Path;
-
 use crate::atmosphere::Atmosphere;
 use crate::rates;
 use crate::shower::Species;
@@ -41,15 +39,12 @@ fn atmosphere(section: &Section<'_>, files: &mut Companions) -> Result<Atmospher
         if section.has("profile") {
             return Err(section.wrong("profile_file", "write either profile or profile_file"));
         }
-        let (path, _) = files.read(section, "profile_file", name)?;
-        return from_file(&path).map_err(|problem| section.wrong("profile_file", problem));
+        let (path, text) = files.read(section, "profile_file", name)?;
+        let read = Atmosphere::from_text(&path.display().to_string(), &text);
+        return read.map_err(|error| section.wrong("profile_file", error.to_string()));
     }
     let name = section.text_if_any("profile")?.unwrap_or("us1976");
     Atmosphere::named(name).map_err(|error| section.wrong("profile", error.to_string()))
-}
-
-fn from_file(path: &Path) -> Result<Atmosphere, String> {
-    Err(format!("{}: profile tables are not read yet", path.display()))
 }
 
 /// Reads `[night_sky]`.

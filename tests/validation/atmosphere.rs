@@ -127,3 +127,26 @@ fn validate_rayleigh_bodhaine1999() {
         assert!((ours / depth - 1.0).abs() < 0.01, "{nm} nm: {ours}, published {depth}");
     }
 }
+
+/// Anderson et al. 1986, AFGL-TR-86-0110: (atmosphere, altitude km, hPa, K) at table nodes, and the
+/// air above 2.2 km as pressure over standard gravity, g/cm2 (reference sheet, section A.2).
+#[test]
+fn validate_reference_atmospheres_anderson1986() {
+    let rows = [
+        ("tropical", 5.0, 559.0, 270.3, 802.2),
+        ("midlatitude_summer", 8.0, 372.0, 248.2, 798.7),
+        ("midlatitude_winter", 10.0, 256.8, 219.7, 785.2),
+        ("subarctic_summer", 1.0, 896.0, 281.7, 789.2),
+        ("subarctic_winter", 15.0, 110.3, 217.2, 772.4),
+        ("us_standard_afgl", 20.0, 55.29, 216.7, 791.1),
+    ];
+    for (name, km, hpa, kelvin, above) in rows {
+        let air = Atmosphere::named(name).unwrap();
+        assert!((air.pressure_pa(1e3 * km) / (100.0 * hpa) - 1.0).abs() < 1e-6, "{name}");
+        assert!((air.temperature_k(1e3 * km) - kelvin).abs() < 1e-6, "{name}");
+        // The depth is the integral of density: 0.2 % more than pressure over standard gravity;
+        // 0.3 % for straight lines of ln p between rows a kilometre apart.
+        let depth = air.depth_g_cm2(2_200.0);
+        assert!((depth / (1.002 * above) - 1.0).abs() < 4e-3, "{name}: {depth}, {above}");
+    }
+}

@@ -45,3 +45,46 @@ fn verify_each_extinction_can_be_switched_off_and_depth_inverts() {
         assert!((back - altitude).abs() < 0.01, "{altitude}: {back}");
     }
 }
+
+/// Every broken profile is refused with the line that is wrong; order, units and missing vapour do
+/// not matter.
+#[test]
+fn verify_profiles_are_read_or_refused_with_their_line() {
+    let row = |km: f64| (km, 1013.0 * (-km / 8.0_f64).exp(), 288.0 - 3.0 * km.min(20.0));
+    let good: Vec<String> = (0..=30)
+        .rev()
+        .map(|km| row(f64::from(km)))
+        .map(|(km, hpa, kelvin)| format!("{km},{hpa},{}", kelvin - 273.15))
+        .collect();
+    let head = "# sounding\naltitude_km,pressure_hpa,temperature_c\n";
+    let text = |rows: &[String]| format!("{head}{}\n", rows.join("\n"));
+    let air = Atmosphere::from_text("night.csv", &text(&good)).unwrap();
+    assert!((air.temperature_k(10_500.0) - (288.0 - 31.5)).abs() < 1e-9);
+    assert!(air.density_kg_m3(60_000.0) > 0.0 && air.depth_g_cm2(60_000.0) < 1.0);
+
+    let with = |index: usize, row: &str| {
+        let mut rows = good.clone();
+        rows[index] = row.to_owned();
+        text(&rows)
+    };
+    let cases = [
+        (with(3, "27,-5,-40"), "line 6: pressure"),
+        (with(4, "27,30,-40"), "stands twice"),
+        (with(5, "25,nan,-40"), "line 8: `nan`"),
+        (with(5, "25,20"), "line 8: `` in column 3"),
+        (with(20, "10,900,-40"), "pressure does not fall"),
+        (text(&good[..2]), "2 rows"),
+        (text(&good[14..]), "ends below"),
+        (text(&[&good[..12], &good[20..]].concat()), "gap from"),
+        ("altitude_ft,pressure_hpa,temperature_c\n".to_owned(), "altitude_m, altitude_km"),
+        (String::from("\u{1}\u{2}\u{3}"), "line 1"),
+        (String::new(), "no header"),
+    ];
+    for (text, expected) in cases {
+        let error = Atmosphere::from_text("night.csv", &text).unwrap_err().to_string();
+        assert!(error.starts_with("night.csv") && error.contains(expected), "{error} / {expected}");
+    }
+    let long = (0..200_000).map(|i| format!("{},{},10", 1e-4 * f64::from(i), 900.0));
+    let error = Atmosphere::from_text("long.csv", &text(&long.collect::<Vec<_>>())).unwrap_err();
+    assert!(error.to_string().contains("more than 100000 rows"), "{error}");
+}

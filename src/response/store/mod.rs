@@ -3,7 +3,7 @@
 //! A *block* is some words of one primary on some pads, in four files: words, pads, margins (only
 //! those above the floor of the code) and images. Each file carries, as key-value metadata, what it
 //! belongs to and how to read it. Events are numbered 64 x word + place. Extending a table adds
-//! blocks and replaces the list; no byte of an older file changes. [`write`] puts everything in one
+//! blocks and replaces the list; no byte of an older file changes. [`write()`] puts everything in one
 //! block a primary, so that tables of equal content are equal byte by byte.
 
 mod frames;

@@ -15,7 +15,7 @@ use super::rates::Rates;
 use super::vertex::Vertex;
 
 /// Curvature of a track of unit charge, rad per metre and uT, times momentum in GeV/c:
-/// p [GeV/c] = 0.299792458 B [T] r [m].
+/// p (GeV/c) = 0.299792458 B (T) r (m).
 pub const CURVATURE_GEV_UT_M: f64 = 0.299_792_458e-6;
 
 /// Longest step of a charged particle, m: the refractive index changes little along it.
