@@ -4,6 +4,7 @@
 //! Exit codes: 0 good, 1 the run failed, 2 wrong arguments or input, 130 interrupted (by the
 //! operating system, which leaves earlier outputs whole).
 
+mod air;
 mod failure;
 mod out;
 mod plan;
@@ -33,6 +34,8 @@ const EXIT_CODES: &str =
 
 #[derive(Debug, Subcommand)]
 enum Command {
+    /// Print an atmosphere's state by altitude, or its transmission by wavelength.
+    Air(air::AirArguments),
     /// Compare the layouts of a study: simulate, rank, report.
     Plan(PlanArguments),
     /// Find the best layouts on the ground of a study: simulate pads, search, report.
@@ -47,6 +50,7 @@ enum Command {
 /// [`Failure`] with its message and exit code.
 pub fn run(arguments: Arguments) -> Result<(), Failure> {
     match arguments.command {
+        Command::Air(arguments) => air::run(&arguments),
         Command::Plan(arguments) => plan::run(&arguments),
         Command::Pool(arguments) => pool::run(&arguments),
         Command::Search(arguments) => search::run(&arguments),

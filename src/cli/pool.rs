@@ -1,7 +1,5 @@
 //! `nightpool pool`: light density against distance from the shower axis.
 
-use std::fmt::Write;
-
 use clap::{Args, ValueEnum};
 use nalgebra::Vector3;
 use rayon::prelude::*;
@@ -16,6 +14,7 @@ use crate::shower::profile::{DevelopmentTable, EmitterTable};
 use crate::shower::{Direction, Primary, Species};
 use crate::units;
 
+use super::air::written;
 use super::{Failure, print};
 
 /// Slabs of the fast engine.
@@ -34,9 +33,12 @@ enum EngineChoice {
 
 /// How results are printed.
 #[derive(Clone, Copy, Debug, PartialEq, Eq, ValueEnum)]
-enum Format {
+pub(super) enum Format {
+    /// Comma-separated values.
     Csv,
+    /// An array of objects.
     Json,
+    /// Aligned columns.
     Table,
 }
 
@@ -47,7 +49,7 @@ enum Switch {
     Off,
 }
 
-fn quantity<T>(parsed: Result<T, units::QuantityError>) -> Result<T, String> {
+pub(super) fn quantity<T>(parsed: Result<T, units::QuantityError>) -> Result<T, String> {
     parsed.map_err(|error| error.to_string())
 }
 
@@ -235,30 +237,7 @@ const COLUMNS: [&str; 4] = ["distance_m", "density_m2", "density_error_m2", "den
 
 fn text(arguments: &PoolArguments, rows: &[[f64; 3]]) -> String {
     let rows = arguments.distance.iter().zip(rows);
-    let mut out = String::new();
-    match arguments.format {
-        Format::Json => {
-            let objects: Vec<_> = rows
-                .map(|(distance, [mean, error, rms])| {
-                    serde_json::json!({ COLUMNS[0]: distance, COLUMNS[1]: mean,
-                        COLUMNS[2]: error, COLUMNS[3]: rms })
-                })
-                .collect();
-            let _ = writeln!(out, "{:#}", serde_json::Value::Array(objects));
-        }
-        Format::Csv => {
-            let _ = writeln!(out, "{}", COLUMNS.join(","));
-            for (distance, [mean, error, rms]) in rows {
-                let _ = writeln!(out, "{distance},{mean},{error},{rms}");
-            }
-        }
-        Format::Table => {
-            let [a, b, c, d] = COLUMNS;
-            let _ = writeln!(out, "{a:>12}  {b:>14}  {c:>16}  {d:>14}");
-            for (distance, [mean, error, rms]) in rows {
-                let _ = writeln!(out, "{distance:>12.1}  {mean:>14.4}  {error:>16.4}  {rms:>14.4}");
-            }
-        }
-    }
-    out
+    let rows: Vec<Vec<f64>> =
+        rows.map(|(distance, [mean, error, rms])| vec![*distance, *mean, *error, *rms]).collect();
+    written(arguments.format, &COLUMNS, &rows)
 }

@@ -256,3 +256,29 @@ fn verify_an_interrupted_run_leaves_earlier_outputs_whole() {
     child.wait().unwrap();
     assert!(read() == before);
 }
+
+/// `air` prints the standard atmosphere under its columns; unknown names and bare numbers are
+/// refused with exit code 2.
+#[test]
+fn verify_air_prints_its_columns_and_refuses_what_it_cannot_read() {
+    let run = |arguments: &[&str]| {
+        std::process::Command::new(env!("CARGO_BIN_EXE_nightpool"))
+            .args(arguments)
+            .output()
+            .unwrap()
+    };
+    let out = run(&["air", "us1976", "--altitude", "0m,11km", "--format", "csv"]);
+    let text = String::from_utf8(out.stdout).unwrap();
+    let lines: Vec<&str> = text.lines().collect();
+    assert_eq!(
+        lines[0],
+        "altitude_m,temperature_k,pressure_pa,density_kg_m3,depth_g_cm2,refractivity,\
+         cherenkov_angle_deg,electron_threshold_mev"
+    );
+    assert!(lines.len() == 3 && lines[1].starts_with("0,288.15,"), "{text}");
+    for wrong in [&["air", "mars"][..], &["air", "us1976", "--altitude", "3"]] {
+        let out = run(wrong);
+        assert_eq!(out.status.code(), Some(2), "{wrong:?}");
+        assert!(out.stdout.is_empty() && !out.stderr.is_empty());
+    }
+}
