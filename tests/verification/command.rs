@@ -262,10 +262,7 @@ fn verify_an_interrupted_run_leaves_earlier_outputs_whole() {
 #[test]
 fn verify_air_prints_its_columns_and_refuses_what_it_cannot_read() {
     let run = |arguments: &[&str]| {
-        std::process::Command::new(env!("CARGO_BIN_EXE_nightpool"))
-            .args(arguments)
-            .output()
-            .unwrap()
+        Command::new(env!("CARGO_BIN_EXE_nightpool")).args(arguments).output().unwrap()
     };
     let out = run(&["air", "us1976", "--altitude", "0m,11km", "--format", "csv"]);
     let text = String::from_utf8(out.stdout).unwrap();
