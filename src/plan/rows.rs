@@ -226,6 +226,16 @@ fn warnings(planned: &Planned<'_>, scored: &[Scored], ranked: &[Ranked]) -> Vec<
     let mut warnings = Vec::new();
     let Some(best) = ranked.first() else { return warnings };
     let leader = &scored[best.layout];
+    if let [first, rest @ ..] = planned.study.sources.as_slice()
+        && !rest.is_empty()
+    {
+        let others: Vec<&str> = rest.iter().map(|source| source.name.as_str()).collect();
+        warnings.push(format!(
+            "only the first source, {}, is ranked; not used: {}",
+            first.name,
+            others.join(", ")
+        ));
+    }
     let edges = [(&planned.gamma, &leader.gamma_words, leader.gamma)].into_iter().chain(
         planned.backgrounds.iter().zip(&leader.backgrounds).map(|(w, (_, r, e))| (w, r, *e)),
     );
