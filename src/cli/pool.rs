@@ -207,7 +207,7 @@ fn profile(
         .into_par_iter()
         .map(|shower| {
             let mut stream = Stream::keyed(arguments.seed, Stage::Shower, &[shower]);
-            let made = parts(&primary, &model, &developments, &mut stream);
+            let made = parts(&primary, field, &model, &developments, &mut stream);
             let light = ShowerLight::new(&model, primary.direction, field, made);
             let mut view = View::default();
             let mut density = |distance: f64, bearing: f64| {

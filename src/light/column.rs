@@ -71,6 +71,17 @@ impl Column {
         Self { observer_altitude_m, slabs: slabs.collect() }
     }
 
+    /// Refractivity at a distance from the observer along an axis, at [`REFERENCE_NM`]: logarithmic
+    /// between the middles of slabs.
+    pub fn refractivity_at(&self, axis: &AxisPath, distance_m: f64) -> f64 {
+        let below = axis.steps.partition_point(|step| step.distance_m > distance_m);
+        let upper = below.clamp(1, axis.steps.len() - 1);
+        let (high, low) = (axis.steps[upper - 1].distance_m, axis.steps[upper].distance_m);
+        let share = (distance_m - high) / (low - high);
+        let (above, under) = (self.slabs[upper - 1].refractivity, self.slabs[upper].refractivity);
+        above * (under / above).powf(share)
+    }
+
     /// The path of a shower axis of one zenith angle through the slabs, on a spherical Earth.
     pub fn axis(&self, zenith_rad: f64) -> AxisPath {
         let radius = EARTH_RADIUS_M + self.observer_altitude_m;
@@ -122,6 +133,22 @@ impl AxisPath {
         let share = (depth_g_cm2.max(1e-3) / high.depth_g_cm2).ln()
             / (low.depth_g_cm2 / high.depth_g_cm2).ln();
         (high.distance_m + share * (low.distance_m - high.distance_m)).max(0.0)
+    }
+
+    /// The slab that holds a distance from the observer.
+    pub fn slab_at(&self, distance_m: f64) -> usize {
+        let inside = |step: &AxisStep| step.distance_m - step.half_length_m > distance_m;
+        self.steps.partition_point(inside).min(self.steps.len() - 1)
+    }
+
+    /// Slant depth at a distance from the observer: the inverse of [`AxisPath::distance_at_m`].
+    pub fn depth_at_g_cm2(&self, distance_m: f64) -> f64 {
+        let below = self.steps.partition_point(|step| step.distance_m > distance_m);
+        let upper = below.clamp(1, self.steps.len() - 1);
+        let (high, low) = (&self.steps[upper - 1], &self.steps[upper]);
+        let share = (distance_m - high.distance_m) / (low.distance_m - high.distance_m);
+        let depth = high.depth_g_cm2 * (low.depth_g_cm2 / high.depth_g_cm2).powf(share);
+        depth.min(self.ground_depth_g_cm2)
     }
 }
 

@@ -41,6 +41,7 @@ pub struct LightModel {
     ages: Vec<f64>,
     nodes: Vec<Node>,
     worth: Vec<Vec<SlabWorth>>,
+    disc_radii_m: Vec<f64>,
 }
 
 /// A collecting disc relative to the axis: in the plane through the core across the axis.
@@ -94,7 +95,26 @@ impl LightModel {
             .collect();
         let sectors = if settings.transverse_field_ut > 0.0 { FIELD_SECTORS } else { 1 };
         let fractions = table.nodes.iter().map(|node| node.fraction).collect();
-        Self { column, reference, sectors, fractions, ages, nodes, worth }
+        let disc_radii_m = vec![1.0; detectors.len()];
+        Self { column, reference, sectors, fractions, ages, nodes, worth, disc_radii_m }
+    }
+
+    /// The same with the radii of the collecting discs, by detector: what a muon close by sees.
+    /// One metre unless stated.
+    pub fn with_disc_radii_m(self, disc_radii_m: Vec<f64>) -> Self {
+        assert_eq!(disc_radii_m.len(), self.worth.len(), "one radius a detector");
+        Self { disc_radii_m, ..self }
+    }
+
+    /// Radius of the collecting disc of a detector, m.
+    pub fn disc_radius_m(&self, detector: usize) -> f64 {
+        self.disc_radii_m[detector]
+    }
+
+    /// Counted quanta per metre of track and unit sin^2 of the emission angle, for a slab seen
+    /// along an axis.
+    pub fn worth(&self, detector: usize, slab: usize, axis: &AxisPath) -> f64 {
+        self.worth[detector][slab].at(self.secant_ratio(axis))
     }
 
     /// Whether the tables depend on the azimuth about the axis.

@@ -10,10 +10,11 @@ pub mod column;
 pub mod footprint;
 pub mod grid;
 pub mod kernel;
+pub mod muon_light;
 pub mod parts;
 pub mod shower_light;
 
 pub use column::{AxisPath, Column, Detector};
 pub use footprint::{Footprint, LightModel, LightSettings, Pad};
 pub use parts::parts;
-pub use shower_light::{Part, Photoelectron, ShowerLight, View};
+pub use shower_light::{Part, Photoelectron, ShowerLight, ShowerParts, View};

@@ -1,14 +1,18 @@
-//! The light of a whole shower: one or many electromagnetic parts about a main axis.
+//! The light of a whole shower: electromagnetic parts and muons about a main axis.
+
+use core::f64::consts::PI;
 
 use nalgebra::Vector3;
 
 use crate::consts::SPEED_OF_LIGHT_M_NS;
 use crate::numerics::Stream;
 use crate::shower::Direction;
+use crate::shower::hadronic::MuonTrack;
 use crate::shower::profile::GaisserHillas;
 
 use super::column::AxisPath;
 use super::footprint::{Footprint, LightModel, Pad, Request};
+use super::muon_light::{Disc, MuonLight};
 
 /// An electromagnetic part of a shower: a development along a line near the main axis.
 #[derive(Clone, Copy, Debug)]
@@ -21,6 +25,28 @@ pub struct Part {
     pub lag_ns: f64,
     /// Its development.
     pub development: GaisserHillas,
+}
+
+/// What gives light in a shower.
+#[derive(Clone, Debug, Default)]
+pub struct ShowerParts {
+    /// Electromagnetic parts.
+    pub parts: Vec<Part>,
+    /// Muons.
+    pub muons: Vec<MuonTrack>,
+}
+
+impl ShowerParts {
+    /// Whether there is nothing that gives light.
+    pub fn is_empty(&self) -> bool {
+        self.parts.is_empty() && self.muons.is_empty()
+    }
+}
+
+impl From<Vec<Part>> for ShowerParts {
+    fn from(parts: Vec<Part>) -> Self {
+        Self { parts, muons: Vec::new() }
+    }
 }
 
 /// A part with its light pool.
@@ -38,6 +64,7 @@ pub struct ShowerLight<'a> {
     along: Vector3<f64>,
     bend_azimuth_rad: f64,
     parts: Vec<LitPart>,
+    muons: Vec<MuonLight>,
 }
 
 /// Direction and time of one photoelectron at a pad.
@@ -55,6 +82,7 @@ pub struct View {
     transverse_m: [f64; 2],
     rise_m: f64,
     part_means: Vec<f64>,
+    muon_means: Vec<f64>,
     /// Expected quanta per m2 at the pad.
     pub density_m2: f64,
 }
@@ -65,8 +93,9 @@ impl<'a> ShowerLight<'a> {
         model: &'a LightModel,
         direction: Direction,
         field_ut: Vector3<f64>,
-        parts: Vec<Part>,
+        lit: impl Into<ShowerParts>,
     ) -> Self {
+        let ShowerParts { parts, muons } = lit.into();
         let axis = model.column.axis(direction.zenith_rad);
         let to_source = direction.to_source();
         let (across, along) = direction.transverse();
@@ -77,7 +106,8 @@ impl<'a> ShowerLight<'a> {
             .into_iter()
             .map(|part| LitPart { part, footprint: model.footprint(&axis, &part.development) })
             .collect();
-        Self { model, axis, to_source, across, along, bend_azimuth_rad, parts }
+        let muons = muons.iter().filter_map(|track| MuonLight::new(track, model, &axis)).collect();
+        Self { model, axis, to_source, across, along, bend_azimuth_rad, parts, muons }
     }
 
     /// Prepares the view of one detector at `pad` (relative to the core, ground frame, m).
@@ -90,6 +120,13 @@ impl<'a> ShowerLight<'a> {
             let (pad, _) = self.relative(&lit.part, view);
             let mean = self.model.density_m2(&lit.footprint, detector, &pad);
             view.part_means.push(mean);
+            sum += mean;
+        }
+        view.muon_means.clear();
+        let disc = self.disc(detector, view);
+        for muon in &self.muons {
+            let mean = muon.quanta(detector, &disc) / (PI * disc.radius_m * disc.radius_m);
+            view.muon_means.push(mean);
             sum += mean;
         }
         view.density_m2 = sum;
@@ -117,12 +154,35 @@ impl<'a> ShowerLight<'a> {
                 let x = arrival.radial_rad * unit[0] - arrival.lateral_rad * unit[1];
                 let y = arrival.radial_rad * unit[1] + arrival.lateral_rad * unit[0];
                 let (x, y) = (x + lit.part.tilt[0], y + lit.part.tilt[1]);
-                take(Photoelectron {
-                    to_source: self.to_source + self.across * x + self.along * y,
-                    time_ns: arrival.time_ns + lit.part.lag_ns - view.rise_m / SPEED_OF_LIGHT_M_NS,
-                });
+                // The front of a tilted part comes earlier on the side it is tilted to.
+                let ahead = pad.distance_m
+                    * (unit[0] * lit.part.tilt[0] + unit[1] * lit.part.tilt[1])
+                    / SPEED_OF_LIGHT_M_NS;
+                let time_ns = arrival.time_ns + lit.part.lag_ns - ahead;
+                take(self.photoelectron([x, y], time_ns, view));
             });
         }
+        let disc = self.disc(detector, view);
+        let scale = scale / (PI * disc.radius_m * disc.radius_m);
+        for (muon, mean) in self.muons.iter().zip(&view.muon_means) {
+            if *mean > 0.0 {
+                muon.draw(detector, &disc, scale, stream, |arrival| {
+                    take(self.photoelectron(arrival.tilt, arrival.time_ns, view));
+                });
+            }
+        }
+    }
+
+    fn photoelectron(&self, [x, y]: [f64; 2], time_ns: f64, view: &View) -> Photoelectron {
+        Photoelectron {
+            to_source: self.to_source + self.across * x + self.along * y,
+            time_ns: time_ns - view.rise_m / SPEED_OF_LIGHT_M_NS,
+        }
+    }
+
+    fn disc(&self, detector: usize, view: &View) -> Disc {
+        let (centre_m, rise_m) = (view.transverse_m, view.rise_m);
+        Disc { centre_m, rise_m, radius_m: self.model.disc_radius_m(detector) }
     }
 
     /// A pad relative to the line of one part, and the unit vector from the line to it.

@@ -120,17 +120,19 @@ fn simulate<'a>(
     let sky_per_ns: Vec<f64> =
         study.kinds.iter().map(|kind| kind.sky_photoelectrons_per_ns(&study.night_sky)).collect();
     let (columns, members) = columns(study);
-    let developments = setup::developments();
+    let (developments, field_ut) = (setup::developments(), setup::field_ut(study));
     let scene = Scene {
         seed: study.seed,
         kinds: &study.kinds,
         sky_per_ns: sky_per_ns.clone(),
         light,
         pointing: setup::pointing(study),
-        field_ut: setup::field_ut(study),
+        field_ut,
         columns: columns.clone(),
         light_scale: 1.0,
-        parts: &|primary, light, stream| crate::light::parts(primary, light, &developments, stream),
+        parts: &|primary, light, stream| {
+            crate::light::parts(primary, field_ut, light, &developments, stream)
+        },
     };
     let run = |name: &str, throw: crate::response::Throw| {
         progress.stage(name, throw.word_count() as u64);

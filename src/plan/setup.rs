@@ -1,5 +1,7 @@
 //! What a study asks for, in the terms of the stages.
 
+use core::f64::consts::PI;
+
 use nalgebra::Vector3;
 
 use crate::atmosphere::Extinction;
@@ -11,7 +13,7 @@ use crate::shower::profile::EmitterTable;
 use crate::shower::profile::shipped::DevelopmentTable;
 use crate::shower::{Direction, Species};
 use crate::study::{self, Study};
-use crate::telescope::{Threshold, accidental};
+use crate::telescope::{TelescopeKind, Threshold, accidental};
 use crate::units::radians;
 
 /// Slabs of air: converged to 1 % (test `verify_pool_converges_in_slabs_and_samples`).
@@ -24,6 +26,8 @@ const REACH_M: f64 = 420.0;
 
 /// The band in which the light pool is reported, nm.
 pub const POOL_BAND_NM: (f64, f64) = (300.0, 600.0);
+/// Radius of the disc on which the light of single muons is averaged for the pool, m.
+const POOL_DISC_M: f64 = 5.0;
 
 pub fn pointing(study: &Study) -> Direction {
     Direction {
@@ -95,7 +99,9 @@ pub fn light_model(study: &Study) -> LightModel {
         })
         .collect();
     detectors.push(Detector { name: "photons", band_nm: POOL_BAND_NM, efficiency: &|_| 1.0 });
-    LightModel::new(&settings, &detectors)
+    let radius = |kind: &TelescopeKind| (kind.collecting_area_m2() / PI).sqrt();
+    let radii = study.kinds.iter().map(radius).chain([POOL_DISC_M]).collect();
+    LightModel::new(&settings, &detectors).with_disc_radii_m(radii)
 }
 
 /// The pixel threshold of each kind.

@@ -2,7 +2,7 @@
 
 use nalgebra::Vector3;
 
-use crate::light::{LightModel, ShowerLight, View};
+use crate::light::{LightModel, ShowerLight, ShowerParts, View};
 use crate::numerics::{Stage, Stream};
 use crate::shower::{Direction, Primary};
 use crate::telescope::{ImageRecord, Quantum, Readout, TelescopeKind};
@@ -53,9 +53,8 @@ pub struct Scene<'a> {
     pub parts: &'a PartMaker<'a>,
 }
 
-/// Makes the electromagnetic parts of a shower along its axis.
-pub type PartMaker<'a> =
-    dyn Fn(&Primary, &LightModel, &mut Stream) -> Vec<crate::light::Part> + Sync + 'a;
+/// Makes what gives light in a shower along its axis.
+pub type PartMaker<'a> = dyn Fn(&Primary, &LightModel, &mut Stream) -> ShowerParts + Sync + 'a;
 
 /// What all columns saw of one word.
 #[derive(Clone, Debug, PartialEq)]

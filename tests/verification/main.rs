@@ -6,6 +6,7 @@ mod command;
 mod hadronic;
 mod layout;
 mod light;
+mod muon_light;
 mod rates;
 mod report;
 mod response;

@@ -1,11 +1,20 @@
-//! The hadronic core of a shower: nucleons and pions followed one by one, neutral pions handed on.
+//! The hadronic core of a shower: nucleons, pions, kaons and muons followed one by one, photons and
+//! electrons handed on.
 //!
-//! A planner's generator: scaling distributions held to published spectrum-weighted moments. The
-//! first pass makes pions only (kaons, a tenth of the mesons, are counted as pions) and follows no
-//! muons, whose light is missing from the background.
+//! `particle` lists the kinds; `cross_section` says how far they fly; `generator` draws one
+//! interaction, its energies from `sharing`; `decay` and `muon` do what their names say;
+//! `transport` joins them. A planner's generator, held to published moments, multiplicities,
+//! attenuation lengths and muon spectra (`tests/validation/hadronic.rs`).
 
 pub mod cross_section;
+pub mod decay;
 pub mod generator;
+pub mod muon;
+pub mod particle;
+pub mod sharing;
 pub mod transport;
 
-pub use transport::{Axis, Core, EmParticle, core};
+pub use generator::Interaction;
+pub use muon::{MuonNode, MuonTrack};
+pub use particle::{Kind, Secondary};
+pub use transport::{Axis, Core, EmParticle, Flight, Floors, core, core_of};

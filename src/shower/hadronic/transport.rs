@@ -1,11 +1,13 @@
 //! Hadrons on their way down.
 
-use crate::consts::{CHARGED_PION_CTAU_M, CHARGED_PION_MASS_GEV, NEUTRAL_PION_MASS_GEV};
 use crate::numerics::Stream;
-use crate::shower::Species;
+use crate::shower::{Primary, Species};
 
-use super::cross_section::{nucleon_length_g_cm2, pion_length_g_cm2};
-use super::generator::{Pion, nucleon_interaction, pion_interaction};
+use super::cross_section::interaction_length_g_cm2;
+use super::decay::decay;
+use super::generator::Interaction;
+use super::muon::{BEND_GEV_UT_M, MuonTrack, follow};
+use super::particle::{Kind, Secondary};
 
 /// The shower axis as a map between slant depth and distance from the observer.
 pub struct Axis<'a> {
@@ -13,11 +15,38 @@ pub struct Axis<'a> {
     pub ground_g_cm2: f64,
     /// Distance from the observer of a slant depth, m.
     pub distance_m: &'a dyn Fn(f64) -> f64,
+    /// Slant depth at a distance from the observer, g/cm2: its inverse.
+    pub depth_g_cm2: &'a dyn Fn(f64) -> f64,
+    /// Field x (unit vector to the source) along the two transverse directions, uT: where positive
+    /// particles are pushed.
+    pub bend_ut: [f64; 2],
 }
 
-/// A photon that starts an electromagnetic part.
+/// Below which energies particles are dropped.
+#[derive(Clone, Copy, Debug)]
+pub struct Floors {
+    /// Hadrons: below this they cannot make a photon that emits light, GeV.
+    pub hadron_gev: f64,
+    /// Photons and electrons: their few electrons end below the Cherenkov threshold, GeV.
+    pub photon_gev: f64,
+    /// Muons, GeV.
+    pub muon_gev: f64,
+    /// Photons and electrons below this fraction of the primary's energy are kept at random with a
+    /// weight, so that the mean is kept and the number of parts stays below a few thousand.
+    pub thinning: f64,
+}
+
+impl Default for Floors {
+    fn default() -> Self {
+        Self { hadron_gev: 1.0, photon_gev: 0.2, muon_gev: 1.0, thinning: 5e-4 }
+    }
+}
+
+/// A photon, electron or positron that starts an electromagnetic part.
 #[derive(Clone, Copy, Debug, PartialEq)]
 pub struct EmParticle {
+    /// Photon, electron or positron.
+    pub kind: Kind,
     /// Energy, GeV.
     pub energy_gev: f64,
     /// How many equal ones it stands for.
@@ -30,166 +59,256 @@ pub struct EmParticle {
     pub transverse_m: [f64; 2],
     /// Slope of its flight against the axis, downward.
     pub slope: [f64; 2],
+    /// Path by which it lags behind the front of the primary at the speed of light, m.
+    pub lag_m: f64,
 }
 
 /// What became of a primary.
 #[derive(Clone, Debug, Default, PartialEq)]
 pub struct Core {
-    /// Photons of neutral pions.
+    /// Photons and electrons of decays.
     pub photons: Vec<EmParticle>,
-    /// Energy of decayed charged pions (muons and neutrinos), GeV.
-    pub decayed_gev: f64,
+    /// Muons.
+    pub muons: Vec<MuonTrack>,
+    /// Energy of neutrinos, GeV.
+    pub neutrino_gev: f64,
     /// Energy of hadrons that reached the ground, GeV.
     pub ground_gev: f64,
-    /// Energy of hadrons and photons dropped below the floors, GeV.
+    /// Energy given to struck nuclei and, by muons, to the air, GeV.
+    pub air_gev: f64,
+    /// Energy of particles dropped below the floors, GeV.
     pub dropped_gev: f64,
 }
 
-/// Hadrons below this cannot make a photon that emits light, GeV.
-const HADRON_FLOOR_GEV: f64 = 1.0;
-/// Photons below this are dropped: their few electrons end below the Cherenkov threshold, GeV.
-const PHOTON_FLOOR_GEV: f64 = 0.2;
-/// Photons below this fraction of the primary's energy are kept at random with a weight, so that
-/// the mean is kept and the number of parts stays below a few thousand.
-const THINNING: f64 = 5e-4;
-
-#[derive(Clone, Copy)]
-struct Hadron {
-    pion: bool,
-    energy_gev: f64,
-    depth_g_cm2: f64,
-    distance_m: f64,
-    transverse_m: [f64; 2],
-    slope: [f64; 2],
+impl Core {
+    /// Energy of everything listed, GeV; photons with their weights.
+    pub fn energy_gev(&self) -> f64 {
+        let photons: f64 = self.photons.iter().map(|p| p.weight * p.energy_gev).sum();
+        let muons: f64 = self.muons.iter().map(|muon| muon.energy_at_ground_gev()).sum();
+        photons + muons + self.neutrino_gev + self.ground_gev + self.air_gev + self.dropped_gev
+    }
 }
 
-/// Follows a nucleon or nucleus along the axis.
+impl MuonTrack {
+    /// Total energy at the ground, GeV; zero for one that does not reach it.
+    pub fn energy_at_ground_gev(&self) -> f64 {
+        let last = self.nodes.last().map_or(0.0, |node| node.energy_gev);
+        if self.at_ground { last } else { 0.0 }
+    }
+}
+
+/// A particle in flight.
+#[derive(Clone, Copy, Debug)]
+pub struct Flight {
+    /// What it is.
+    pub kind: Kind,
+    /// Total energy, GeV.
+    pub energy_gev: f64,
+    /// Slant depth along the main axis, g/cm2.
+    pub depth_g_cm2: f64,
+    /// Distance from the observer along the main axis, m.
+    pub distance_m: f64,
+    /// Position across the axis, m.
+    pub transverse_m: [f64; 2],
+    /// Slope against the axis, downward.
+    pub slope: [f64; 2],
+    /// Path by which it lags behind the front, m.
+    pub lag_m: f64,
+}
+
+enum Fate {
+    Interacts,
+    Decays,
+    Lands,
+}
+
+struct Walk<'a> {
+    axis: &'a Axis<'a>,
+    floors: Floors,
+    thinning_gev: f64,
+    stack: Vec<Flight>,
+    products: Vec<Secondary>,
+    core: Core,
+}
+
+/// Follows a nucleon, nucleus or muon along the axis.
 ///
 /// Nuclei are superpositions of free nucleons, each with its own first interaction. Angles are
-/// small: depths are counted along the main axis.
-pub fn core(species: Species, energy_gev: f64, axis: &Axis<'_>, stream: &mut Stream) -> Core {
-    let mut core = Core::default();
-    let nucleons = species.mass_number().max(1);
-    let each = energy_gev / f64::from(nucleons);
-    let thinning_gev = THINNING * energy_gev;
+/// small: depths are counted along the main axis; products that fly backward are dropped.
+pub fn core(
+    species: Species,
+    energy_gev: f64,
+    axis: &Axis<'_>,
+    floors: Floors,
+    stream: &mut Stream,
+) -> Core {
     let top = (axis.distance_m)(1e-3);
-    let mut stack: Vec<Hadron> = (0..nucleons)
-        .map(|_| Hadron {
-            pion: false,
-            energy_gev: each,
-            depth_g_cm2: 0.0,
-            distance_m: top,
-            transverse_m: [0.0; 2],
-            slope: [0.0; 2],
-        })
-        .collect();
-    let mut pions = Vec::new();
-    while let Some(hadron) = stack.pop() {
-        if hadron.energy_gev < HADRON_FLOOR_GEV {
-            core.dropped_gev += hadron.energy_gev;
-            continue;
+    let start = |kind, energy_gev| Flight {
+        kind,
+        energy_gev,
+        depth_g_cm2: 0.0,
+        distance_m: top,
+        transverse_m: [0.0; 2],
+        slope: [0.0; 2],
+        lag_m: 0.0,
+    };
+    let nucleons = |count: u8, charge: u8| {
+        let each = energy_gev / f64::from(count);
+        let kind = move |i| if i < charge { Kind::Proton } else { Kind::Neutron };
+        (0..count).map(|i| start(kind(i), each)).collect::<Vec<_>>()
+    };
+    let stack = match species {
+        Species::Proton => nucleons(1, 1),
+        Species::Neutron => nucleons(1, 0),
+        Species::Nucleus { mass_number, charge } => nucleons(mass_number, charge),
+        Species::MuonMinus => vec![start(Kind::MuonMinus, energy_gev)],
+        Species::MuonPlus => vec![start(Kind::MuonPlus, energy_gev)],
+        Species::Electron => vec![start(Kind::Electron, energy_gev)],
+        Species::Positron => vec![start(Kind::Positron, energy_gev)],
+        Species::Gamma => vec![start(Kind::Photon, energy_gev)],
+    };
+    let thinning_gev = floors.thinning * energy_gev;
+    let (products, core) = (Vec::new(), Core::default());
+    let mut walk = Walk { axis, floors, thinning_gev, stack, products, core };
+    let mut interaction = Interaction::default();
+    while let Some(flight) = walk.stack.pop() {
+        walk.one(flight, &mut interaction, stream);
+    }
+    walk.core
+}
+
+/// The hadronic core of a primary with the usual floors.
+pub fn core_of(primary: &Primary, axis: &Axis<'_>, stream: &mut Stream) -> Core {
+    core(primary.species, primary.energy_gev, axis, Floors::default(), stream)
+}
+
+impl Walk<'_> {
+    fn one(&mut self, flight: Flight, interaction: &mut Interaction, stream: &mut Stream) {
+        match flight.kind {
+            Kind::Photon | Kind::Electron | Kind::Positron => {
+                self.electromagnetic(&flight, stream);
+                return;
+            }
+            Kind::Neutrino => {
+                self.core.neutrino_gev += flight.energy_gev;
+                return;
+            }
+            Kind::MuonMinus | Kind::MuonPlus => {
+                self.muon(flight, stream);
+                return;
+            }
+            Kind::PionZero | Kind::Eta => {
+                self.decayed(&flight, stream);
+                return;
+            }
+            _ => {}
         }
-        let Some(at) = interaction_point(hadron, axis, stream, &mut core) else { continue };
-        pions.clear();
-        if hadron.pion {
-            pion_interaction(hadron.energy_gev, stream, &mut pions);
-        } else {
-            let kept = nucleon_interaction(hadron.energy_gev, stream, &mut pions);
-            stack.push(Hadron { energy_gev: kept, ..at });
+        if flight.energy_gev < self.floors.hadron_gev {
+            self.core.dropped_gev += flight.energy_gev;
+            return;
         }
-        let made: f64 = pions.iter().map(|pion| pion.energy_gev).sum();
-        let spent = if hadron.pion {
-            hadron.energy_gev
-        } else {
-            hadron.energy_gev - stack[stack.len() - 1].energy_gev
-        };
-        core.dropped_gev += (spent - made).max(0.0);
-        for pion in &pions {
-            let slope = turned(at.slope, pion);
-            let child = Hadron { pion: true, energy_gev: pion.energy_gev, slope, ..at };
-            if pion.neutral {
-                neutral_decay(child, thinning_gev, stream, &mut core);
-            } else {
-                stack.push(child);
+        let (at, fate) = self.moved(flight, stream);
+        match fate {
+            Fate::Lands => self.core.ground_gev += at.energy_gev,
+            Fate::Decays => self.decayed(&at, stream),
+            Fate::Interacts => {
+                interaction.draw(at.kind, at.energy_gev, stream);
+                self.core.air_gev += interaction.target_gev;
+                for product in &interaction.secondaries {
+                    self.launch(&at, product);
+                }
             }
         }
     }
-    core
-}
 
-/// Moves a hadron to its interaction; `None` if it decays or reaches the ground first.
-fn interaction_point(
-    hadron: Hadron,
-    axis: &Axis<'_>,
-    stream: &mut Stream,
-    core: &mut Core,
-) -> Option<Hadron> {
-    let length = if hadron.pion {
-        pion_length_g_cm2(hadron.energy_gev)
-    } else {
-        nucleon_length_g_cm2(hadron.energy_gev)
-    };
-    let depth = hadron.depth_g_cm2 + length * stream.exponential();
-    let reaches_ground = depth >= axis.ground_g_cm2;
-    let distance = if reaches_ground { 0.0 } else { (axis.distance_m)(depth) };
-    let path = hadron.distance_m - distance;
-    if hadron.pion {
-        let range = hadron.energy_gev / CHARGED_PION_MASS_GEV * CHARGED_PION_CTAU_M;
-        if range * stream.exponential() < path {
-            core.decayed_gev += hadron.energy_gev;
-            return None;
+    /// Moves a hadron to where it interacts, decays or lands.
+    fn moved(&self, from: Flight, stream: &mut Stream) -> (Flight, Fate) {
+        let mass = from.kind.mass_gev();
+        let momentum = (from.energy_gev.powi(2) - mass * mass).max(1e-6).sqrt();
+        let length = interaction_length_g_cm2(from.kind, from.energy_gev);
+        let depth = from.depth_g_cm2 + length * stream.exponential();
+        let lands = depth >= self.axis.ground_g_cm2;
+        let distance = if lands { 0.0 } else { (self.axis.distance_m)(depth) };
+        let flown = momentum / mass * from.kind.ctau_m() * stream.exponential();
+        let decays = flown < from.distance_m - distance;
+        let path = if decays { flown } else { from.distance_m - distance }.max(0.0);
+        let bend = f64::from(from.kind.charge()) * BEND_GEV_UT_M * path / momentum;
+        let mut at = from;
+        for i in 0..2 {
+            let turn = bend * self.axis.bend_ut[i];
+            at.transverse_m[i] += (from.slope[i] + 0.5 * turn) * path;
+            at.slope[i] += turn;
+        }
+        let tilt = from.slope[0].powi(2) + from.slope[1].powi(2);
+        at.lag_m += 0.5 * path * (tilt + (mass / momentum).powi(2));
+        if decays {
+            at.distance_m = from.distance_m - flown;
+            at.depth_g_cm2 = (self.axis.depth_g_cm2)(at.distance_m);
+            return (at, Fate::Decays);
+        }
+        at.distance_m = distance;
+        at.depth_g_cm2 = depth;
+        (at, if lands { Fate::Lands } else { Fate::Interacts })
+    }
+
+    fn decayed(&mut self, at: &Flight, stream: &mut Stream) {
+        let mut products = core::mem::take(&mut self.products);
+        decay(at.kind, at.energy_gev, stream, &mut products);
+        for product in &products {
+            self.launch(at, product);
+        }
+        self.products = products;
+    }
+
+    /// Puts a product on its way, or counts its energy as dropped if it flies backward.
+    fn launch(&mut self, at: &Flight, product: &Secondary) {
+        let [x, y] = product.transverse_gev;
+        let forward = product.along_gev > 0.2 * x.hypot(y);
+        if product.kind == Kind::Neutrino {
+            self.core.neutrino_gev += product.energy_gev;
+        } else if forward {
+            let slope = [at.slope[0] + x / product.along_gev, at.slope[1] + y / product.along_gev];
+            let (kind, energy_gev) = (product.kind, product.energy_gev);
+            self.stack.push(Flight { kind, energy_gev, slope, ..*at });
+        } else {
+            self.core.dropped_gev += product.energy_gev;
         }
     }
-    if reaches_ground {
-        core.ground_gev += hadron.energy_gev;
-        return None;
-    }
-    let transverse_m = [
-        hadron.transverse_m[0] + hadron.slope[0] * path,
-        hadron.transverse_m[1] + hadron.slope[1] * path,
-    ];
-    Some(Hadron { depth_g_cm2: depth, distance_m: distance, transverse_m, ..hadron })
-}
 
-fn turned(slope: [f64; 2], pion: &Pion) -> [f64; 2] {
-    let momentum = (pion.energy_gev.powi(2) - CHARGED_PION_MASS_GEV.powi(2)).max(1e-6).sqrt();
-    let along =
-        (momentum.powi(2) - pion.transverse_gev[0].powi(2) - pion.transverse_gev[1].powi(2))
-            .max(1e-4 * momentum * momentum)
-            .sqrt();
-    [slope[0] + pion.transverse_gev[0] / along, slope[1] + pion.transverse_gev[1] / along]
-}
-
-/// Two photons, isotropic in the pion's rest frame.
-fn neutral_decay(pion: Hadron, thinning_gev: f64, stream: &mut Stream, core: &mut Core) {
-    let energy = pion.energy_gev.max(1.000_01 * NEUTRAL_PION_MASS_GEV);
-    let beta = (1.0 - (NEUTRAL_PION_MASS_GEV / energy).powi(2)).sqrt();
-    let cosine = 2.0 * stream.uniform() - 1.0;
-    let sine = (1.0 - cosine * cosine).sqrt();
-    let (cos, sin) = stream.direction();
-    for side in [1.0, -1.0] {
-        let photon = 0.5 * energy * (1.0 + side * beta * cosine);
-        if photon < PHOTON_FLOOR_GEV {
-            core.dropped_gev += photon;
-            continue;
+    fn electromagnetic(&mut self, at: &Flight, stream: &mut Stream) {
+        if at.energy_gev < self.floors.photon_gev {
+            self.core.dropped_gev += at.energy_gev;
+            return;
         }
         let mut weight = 1.0;
-        if photon < thinning_gev {
-            let keep = photon / thinning_gev;
+        if at.energy_gev < self.thinning_gev {
+            let keep = at.energy_gev / self.thinning_gev;
             if stream.uniform() >= keep {
-                continue;
+                return;
             }
             weight = 1.0 / keep;
         }
-        let tilt = side * 0.5 * NEUTRAL_PION_MASS_GEV * sine / photon;
-        let slope = [pion.slope[0] + tilt * cos, pion.slope[1] + tilt * sin];
-        core.photons.push(EmParticle {
-            energy_gev: photon,
+        let Flight { kind, energy_gev, depth_g_cm2, distance_m, transverse_m, slope, lag_m } = *at;
+        self.core.photons.push(EmParticle {
+            kind,
+            energy_gev,
             weight,
-            depth_g_cm2: pion.depth_g_cm2,
-            distance_m: pion.distance_m,
-            transverse_m: pion.transverse_m,
+            depth_g_cm2,
+            distance_m,
+            transverse_m,
             slope,
+            lag_m,
         });
+    }
+
+    fn muon(&mut self, flight: Flight, stream: &mut Stream) {
+        let end = follow(flight, self.axis, self.floors.muon_gev, stream);
+        self.core.air_gev += end.lost_gev;
+        if let Some(at) = end.decayed {
+            self.decayed(&at, stream);
+        } else if !end.track.at_ground {
+            self.core.dropped_gev += end.track.nodes.last().map_or(0.0, |node| node.energy_gev);
+        }
+        self.core.muons.push(end.track);
     }
 }
