@@ -18,6 +18,7 @@ pub mod report;
 pub mod response;
 pub mod shower;
 pub mod site;
+pub mod staging;
 pub mod study;
 pub mod telescope;
 pub mod units;

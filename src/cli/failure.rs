@@ -12,18 +12,21 @@ pub enum Failure {
     Input(String),
     /// The run itself failed: exit code 1.
     Run(String),
+    /// Interrupted, after what could be kept was written: exit code 130.
+    Interrupted(String),
 }
 
 impl Failure {
     /// Writes the message to standard error and gives the exit code.
     pub fn report(&self) -> ExitCode {
         use std::io::Write;
-        let (Self::Input(message) | Self::Run(message)) = self;
+        let (Self::Input(message) | Self::Run(message) | Self::Interrupted(message)) = self;
         // Nobody is left to tell if standard error is closed.
         let _ = writeln!(std::io::stderr(), "error: {message}");
         match self {
             Self::Input(_) => ExitCode::from(2),
             Self::Run(_) => ExitCode::from(1),
+            Self::Interrupted(_) => ExitCode::from(super::interrupt::INTERRUPTED),
         }
     }
 }

@@ -1,11 +1,12 @@
 //! The command line: arguments to a study to a run; the only place that prints or exits.
 //!
 //! A subcommand is a file with an argument struct and a `run` that gives `Result<(), Failure>`.
-//! Exit codes: 0 good, 1 the run failed, 2 wrong arguments or input, 130 interrupted (by the
-//! operating system, which leaves earlier outputs whole).
+//! Exit codes: 0 good, 1 the run failed, 2 wrong arguments or input, 130 interrupted (earlier
+//! outputs stay whole; a search writes its best so far).
 
 mod air;
 mod failure;
+mod interrupt;
 mod out;
 mod plan;
 mod pool;

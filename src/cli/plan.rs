@@ -4,11 +4,13 @@ use std::path::PathBuf;
 
 use clap::Args;
 
-use crate::plan::{PlanError, plan};
+use crate::plan::{PlanError, Tables, plan};
 use crate::report;
+use crate::response::TableError;
 use crate::study::Study;
 
 use super::failure::Failure;
+use super::interrupt;
 use super::out::print;
 use super::progress::Bar;
 use super::table::ranking_text;
@@ -27,6 +29,8 @@ pub struct PlanArguments {
     /// Seed of the random streams, instead of the study's.
     #[arg(long, value_name = "N", value_parser = clap::value_parser!(u64).range(0..=i64::MAX as u64))]
     seed: Option<u64>,
+    #[command(flatten)]
+    table: TableArguments,
     /// No progress, no table: errors only.
     #[arg(long, short)]
     quiet: bool,
@@ -35,10 +39,43 @@ pub struct PlanArguments {
     json: bool,
 }
 
+/// Where simulated events are kept.
+#[derive(Debug, Args)]
+pub struct TableArguments {
+    /// Folder for the simulated events, read again by later runs [default: table in the report's folder].
+    #[arg(long, value_name = "DIR")]
+    table: Option<PathBuf>,
+    /// Simulate again and replace the events that are kept.
+    #[arg(long)]
+    rebuild: bool,
+}
+
+impl TableArguments {
+    /// The tables of a run with this folder for its report.
+    pub fn tables(&self, out: &std::path::Path) -> Tables {
+        let folder = self.table.clone().unwrap_or_else(|| out.join("table"));
+        Tables { folder, rebuild: self.rebuild }
+    }
+}
+
 impl From<PlanError> for Failure {
     fn from(error: PlanError) -> Self {
-        Self::Run(error.to_string())
+        match error {
+            PlanError::Table(TableError::Io { .. } | TableError::Parquet { .. }) => {
+                Self::Run(error.to_string())
+            }
+            PlanError::Table(_) => Self::Input(error.to_string()),
+            _ => Self::Run(error.to_string()),
+        }
     }
+}
+
+/// The pool of threads of a run.
+pub(super) fn threads(number: Option<u16>) -> Result<rayon::ThreadPool, Failure> {
+    rayon::ThreadPoolBuilder::new()
+        .num_threads(number.map_or(0, usize::from))
+        .build()
+        .map_err(|error| Failure::Run(format!("threads cannot be started: {error}")))
 }
 
 /// Reads the study, simulates, ranks, writes the report.
@@ -49,12 +86,11 @@ pub(super) fn run(arguments: &PlanArguments) -> Result<(), Failure> {
     }
     let out = arguments.out.clone().unwrap_or_else(|| PathBuf::from("reports").join(&study.name));
     report::check_destination(&out)?;
-    let pool = rayon::ThreadPoolBuilder::new()
-        .num_threads(arguments.threads.map_or(0, usize::from))
-        .build()
-        .map_err(|error| Failure::Run(format!("threads cannot be started: {error}")))?;
+    let tables = arguments.table.tables(&out);
+    report::check_destination(&tables.folder)?;
+    interrupt::watch()?;
     let bar = Bar::new(arguments.quiet);
-    let result = pool.install(|| plan(&study, &bar));
+    let result = threads(arguments.threads)?.install(|| plan(&study, Some(&tables), &bar));
     bar.clear();
     let result = result?;
     report::write_all(&out, &result)?;

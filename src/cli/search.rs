@@ -1,17 +1,18 @@
 //! `nightpool search`.
 
-use std::fmt::Write;
 use std::path::PathBuf;
-use std::sync::atomic::AtomicBool;
+use std::sync::atomic::Ordering;
 
 use clap::Args;
 
-use crate::plan::{Best, SearchError, Wanted, plan, search_ground};
+use crate::plan::{Best, SearchError, Wanted, best_files, plan, search_ground};
 use crate::report;
 use crate::study::{Layout, Study};
 
 use super::failure::Failure;
+use super::interrupt;
 use super::out::print;
+use super::plan::{TableArguments, threads};
 use super::progress::Bar;
 use super::table::ranking_text;
 
@@ -35,9 +36,20 @@ pub struct SearchArguments {
     /// Folder for the report [default: reports/NAME-OF-STUDY-search].
     #[arg(long, value_name = "DIR")]
     out: Option<PathBuf>,
+    #[command(flatten)]
+    table: TableArguments,
+    /// Number of threads [default: one a core]. Results do not depend on it.
+    #[arg(long, value_name = "N", value_parser = clap::value_parser!(u16).range(1..=1024))]
+    threads: Option<u16>,
+    /// Seed of the random streams, instead of the study's.
+    #[arg(long, value_name = "N", value_parser = clap::value_parser!(u64).range(0..=i64::MAX as u64))]
+    seed: Option<u64>,
     /// No progress, no table: errors only.
     #[arg(long, short)]
     quiet: bool,
+    /// Print the ranking as JSON instead of a table.
+    #[arg(long)]
+    json: bool,
 }
 
 fn pad_spacing(text: &str) -> Result<f64, String> {
@@ -48,15 +60,19 @@ fn pad_spacing(text: &str) -> Result<f64, String> {
 impl From<SearchError> for Failure {
     fn from(error: SearchError) -> Self {
         match error {
-            SearchError::Plan(_) => Self::Run(error.to_string()),
+            SearchError::Plan(error) => error.into(),
             _ => Self::Input(error.to_string()),
         }
     }
 }
 
-/// Simulates pads, searches, and plans the winners on showers of their own.
+/// Simulates pads, searches, and plans the winners on showers of their own. The first interrupt
+/// ends the search and writes its best so far.
 pub(super) fn run(arguments: &SearchArguments) -> Result<(), Failure> {
     let mut study = Study::read(&arguments.study)?;
+    if let Some(seed) = arguments.seed {
+        study.seed = seed;
+    }
     if arguments.required > arguments.telescopes {
         return Err(Failure::Input("--required: more than --telescopes".into()));
     }
@@ -66,6 +82,8 @@ pub(super) fn run(arguments: &SearchArguments) -> Result<(), Failure> {
     let folder = || PathBuf::from("reports").join(format!("{}-search", study.name));
     let out = arguments.out.clone().unwrap_or_else(folder);
     report::check_destination(&out)?;
+    let tables = arguments.table.tables(&out);
+    report::check_destination(&tables.folder)?;
     let wanted = Wanted {
         telescopes: arguments.telescopes.into(),
         budget: arguments.budget,
@@ -73,16 +91,33 @@ pub(super) fn run(arguments: &SearchArguments) -> Result<(), Failure> {
         condition: arguments.required.into(),
     };
     let bar = Bar::new(arguments.quiet);
-    let best = search_ground(&study, &wanted, &AtomicBool::new(false), &bar)?;
+    let pool = threads(arguments.threads)?;
+    interrupt::watch()?;
+    let searching = || interrupt::wait(true);
+    let best = pool.install(|| {
+        search_ground(&study, &wanted, Some(&tables), (&interrupt::STOP, &searching), &bar)
+    })?;
+    let stopped = interrupt::STOP.load(Ordering::SeqCst);
+    interrupt::wait(false);
+    let found = best_files(&best, &study)?;
+    if stopped {
+        bar.clear();
+        report::write_files(&out, &found)?;
+        let place = out.join("front.csv");
+        let text = format!("interrupted; the best so far stands in {}", place.display());
+        return Err(Failure::Interrupted(text));
+    }
     study.layouts = best.iter().map(|best| layout(best, &study, &wanted)).collect();
     // Showers that the search has not seen.
     study.seed = study.seed.wrapping_add(1);
-    let result = plan(&study, &bar)?;
+    let result = pool.install(|| plan(&study, Some(&tables), &bar))?;
     bar.clear();
     let mut files = report::files(&result)?;
-    files.push(("front.csv".into(), front_csv(&best).into_bytes()));
-    files.push(("build_up.csv".into(), build_up_csv(&best, &study).into_bytes()));
+    files.extend(found);
     report::write_files(&out, &files)?;
+    if arguments.json {
+        return print(&report::ranking_json(&result));
+    }
     if arguments.quiet {
         return Ok(());
     }
@@ -97,29 +132,4 @@ fn layout(best: &Best, study: &Study, wanted: &Wanted) -> Layout {
         window_ns: study.layouts.first().map_or(50.0, |layout| layout.window_ns),
         line: 0,
     }
-}
-
-fn front_csv(best: &[Best]) -> String {
-    let mut text = String::from("telescopes,cost,searched_rate_hz,gamma_rate_hz,on_front\n");
-    for row in best {
-        let (count, cost) = (row.telescopes.len(), row.cost);
-        let (searched, reported) = (row.searched_hz, row.reported_hz);
-        let _ = writeln!(text, "{count},{cost},{searched:.6e},{reported:.6e},{}", row.on_front);
-    }
-    text
-}
-
-fn build_up_csv(best: &[Best], study: &Study) -> String {
-    let mut text = String::from("telescopes,stage,kind,east_m,north_m,gamma_rate_hz,loss_if_out\n");
-    for row in best {
-        for (stage, (placed, rate)) in row.build_up.iter().enumerate() {
-            let index = row.telescopes.iter().position(|telescope| telescope == placed);
-            let loss = index.map_or(f64::NAN, |index| row.losses[index]);
-            let (kind, [x, y, _]) = (&study.kinds[placed.kind].name, placed.enu_m);
-            let count = row.telescopes.len();
-            let stage = stage + 1;
-            let _ = writeln!(text, "{count},{stage},{kind},{x:.2},{y:.2},{rate:.6e},{loss:.4}");
-        }
-    }
-    text
 }

@@ -5,8 +5,10 @@ mod pool;
 mod rows;
 mod search;
 mod setup;
+mod tables;
 
-pub use search::{Best, SearchError, Wanted, search_ground};
+pub use search::{Best, SearchError, Wanted, best_files, search_ground};
+pub use tables::Tables;
 
 use std::collections::BTreeMap;
 
@@ -16,7 +18,7 @@ use crate::layout::{at_least, rank};
 use crate::light::LightModel;
 use crate::rates::{self, Estimate, Spectrum, SpectrumError};
 use crate::report::PlanResult;
-use crate::response::{Column, Sample, Scene};
+use crate::response::{Column, Sample, Scene, TableError};
 use crate::study::Study;
 
 /// A study that cannot be planned.
@@ -28,6 +30,9 @@ pub enum PlanError {
     /// An engine that is not built yet.
     #[error("engine = \"{0}\" is not available for plan; write \"profile\"")]
     Engine(&'static str),
+    /// A stored response table that cannot be used.
+    #[error("{0}; write --rebuild to simulate it again, or another --table")]
+    Table(#[from] TableError),
     /// Nothing triggered.
     #[error("no layout has a single gamma trigger; raise gamma_showers or lower the thresholds")]
     Empty,
@@ -80,11 +85,16 @@ struct Planned<'a> {
     backgrounds: Vec<Weighted>,
 }
 
-/// Simulates a study, scores its layouts and ranks them.
+/// Simulates a study, or reads its stored tables, scores its layouts and ranks them.
 ///
 /// # Errors
-/// [`PlanError`] if the study names a spectrum or an engine that is not there.
-pub fn plan(study: &Study, progress: &dyn Progress) -> Result<PlanResult, PlanError> {
+/// [`PlanError`] if the study names a spectrum or an engine that is not there, or a stored table
+/// cannot be used.
+pub fn plan(
+    study: &Study,
+    tables: Option<&Tables>,
+    progress: &dyn Progress,
+) -> Result<PlanResult, PlanError> {
     if study.engine != crate::study::Engine::Profile {
         return Err(PlanError::Engine(study.engine.name()));
     }
@@ -92,7 +102,7 @@ pub fn plan(study: &Study, progress: &dyn Progress) -> Result<PlanResult, PlanEr
     progress.stage("light tables", 1);
     let light = setup::light_model(study);
     progress.advance(1);
-    let planned = simulate(study, &light, spectra, progress);
+    let planned = simulate(study, &light, spectra, tables, progress)?;
     progress.stage("light pool", 1);
     let pool = pool::rows(study, &light);
     progress.advance(1);
@@ -115,8 +125,9 @@ fn simulate<'a>(
     study: &'a Study,
     light: &LightModel,
     (gamma_spectrum, background_spectra): (Spectrum, Vec<Spectrum>),
+    tables: Option<&Tables>,
     progress: &dyn Progress,
-) -> Planned<'a> {
+) -> Result<Planned<'a>, PlanError> {
     let sky_per_ns: Vec<f64> =
         study.kinds.iter().map(|kind| kind.sky_photoelectrons_per_ns(&study.night_sky)).collect();
     let (columns, members) = columns(study);
@@ -134,26 +145,21 @@ fn simulate<'a>(
             crate::light::parts(primary, field_ut, light, &developments, stream)
         },
     };
-    let run = |name: &str, throw: crate::response::Throw| {
-        progress.stage(name, throw.word_count() as u64);
-        Sample::simulate(&scene, &throw, &|| progress.advance(1))
-    };
-    let gamma = Weighted {
-        sample: run("gamma showers", setup::gamma_throw(study, &columns)),
-        spectrum: gamma_spectrum,
-    };
-    let backgrounds = study
-        .backgrounds
-        .iter()
-        .zip(background_spectra)
-        .map(|(background, spectrum)| {
-            let name = format!("{} showers", background.species);
-            let throw = setup::background_throw(study, background.species, &columns);
-            Weighted { sample: run(&name, throw), spectrum }
-        })
-        .collect();
+    let gamma = [setup::gamma_throw(study, &columns)].into_iter();
+    let backgrounds = study.backgrounds.iter();
+    let backgrounds =
+        backgrounds.map(|known| setup::background_throw(study, known.species, &columns));
+    let throws: Vec<_> = gamma.chain(backgrounds).collect();
+    let words = throws.iter().map(|(throw, repetitions)| throw.word_count() * repetitions);
+    progress.stage("showers", words.sum::<usize>() as u64);
+    let samples = tables::samples(study, &scene, &throws, tables, &|| progress.advance(1))?;
+    let spectra = core::iter::once(gamma_spectrum).chain(background_spectra);
+    let mut weighted =
+        samples.into_iter().zip(spectra).map(|(sample, spectrum)| Weighted { sample, spectrum });
+    let gamma = weighted.next().expect("a throw gives a sample");
+    let backgrounds = weighted.collect();
     let thresholds_pe = setup::thresholds_pe(study, &sky_per_ns);
-    Planned { study, thresholds_pe, sky_per_ns, columns, members, gamma, backgrounds }
+    Ok(Planned { study, thresholds_pe, sky_per_ns, columns, members, gamma, backgrounds })
 }
 
 /// The union of all telescopes of all layouts, and which of them each layout has.

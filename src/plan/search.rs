@@ -1,6 +1,6 @@
 //! A study's ground as pads, simulated once, for a search over sets of them.
 
-use std::sync::atomic::AtomicBool;
+use std::sync::atomic::{AtomicBool, Ordering};
 
 use thiserror::Error;
 
@@ -12,9 +12,10 @@ use crate::layout::{
     Condition, Found, LayoutError, Objective, Planes, Problem, Settings, Tariff, search,
 };
 use crate::rates;
+use crate::report::{self, FoundRow, Provenance, ReportError, StageRow};
 use crate::study::{Layout, Placed, Study};
 
-use super::{PlanError, Progress, Weighted, setup, simulate};
+use super::{PlanError, Progress, Tables, Weighted, setup, simulate};
 
 /// What to search for.
 #[derive(Clone, Debug, PartialEq)]
@@ -72,15 +73,66 @@ pub struct Best {
     pub losses: Vec<f64>,
 }
 
+impl Best {
+    /// As a row of the table of found layouts.
+    pub fn row(&self) -> FoundRow {
+        FoundRow {
+            telescopes: self.telescopes.len(),
+            cost: self.cost,
+            searched_rate_hz: self.searched_hz,
+            gamma_rate_hz: self.reported_hz,
+            on_front: self.on_front,
+        }
+    }
+
+    /// Its telescopes in the order of building.
+    pub fn stages(&self, study: &Study) -> Vec<StageRow> {
+        let row = |(index, (placed, rate)): (usize, &(Placed, f64))| {
+            let place = self.telescopes.iter().position(|telescope| telescope == placed);
+            StageRow {
+                telescopes: self.telescopes.len(),
+                stage: index + 1,
+                kind: study.kinds[placed.kind].name.clone(),
+                position_m: placed.enu_m,
+                gamma_rate_hz: *rate,
+                loss_if_out: place.map_or(f64::NAN, |place| self.losses[place]),
+            }
+        };
+        self.build_up.iter().enumerate().map(row).collect()
+    }
+}
+
+/// The files of a search: `front` and `build_up`, as CSV and Parquet.
+///
+/// # Errors
+/// [`ReportError::Table`].
+pub fn best_files(best: &[Best], study: &Study) -> Result<Vec<(String, Vec<u8>)>, ReportError> {
+    let found: Vec<FoundRow> = best.iter().map(Best::row).collect();
+    let stages: Vec<StageRow> = best.iter().flat_map(|best| best.stages(study)).collect();
+    let from = Provenance {
+        study: study.name.clone(),
+        study_checksum: study.checksum.clone(),
+        version: env!("CARGO_PKG_VERSION").into(),
+        seed: study.seed,
+        engine: study.engine.name().into(),
+        ..Provenance::default()
+    };
+    report::found_files(&found, &stages, &from)
+}
+
 /// Searches the ground of a study: the best layouts of each number of telescopes up to the wanted,
 /// by gamma trigger rate, from half of the showers, with rates from the other half.
+///
+/// `searching` is called when the simulation is done; setting `stop` from then on ends the search
+/// soon, with the best so far of the numbers of telescopes that were reached.
 ///
 /// # Errors
 /// [`SearchError`].
 pub fn search_ground(
     study: &Study,
     wanted: &Wanted,
-    stop: &AtomicBool,
+    tables: Option<&Tables>,
+    (stop, searching): (&AtomicBool, &dyn Fn()),
     progress: &dyn Progress,
 ) -> Result<Vec<Best>, SearchError> {
     let pads = pads(study, wanted)?;
@@ -91,7 +143,7 @@ pub fn search_ground(
     progress.stage("light tables", 1);
     let light = setup::light_model(&ground);
     progress.advance(1);
-    let planned = simulate(&ground, &light, spectra, progress);
+    let planned = simulate(&ground, &light, spectra, tables, progress)?;
     let planes =
         planes(&planned.gamma, |column| planned.thresholds_pe[planned.columns[column].kind]);
     let problem = |parity: u32| Problem {
@@ -113,6 +165,7 @@ pub fn search_ground(
         budget: wanted.budget,
     };
     let (searched, reported) = (problem(0), problem(1));
+    searching();
     progress.stage("search", wanted.telescopes as u64);
     let mut best = Vec::new();
     for telescopes in wanted.condition..=wanted.telescopes {
@@ -130,6 +183,9 @@ pub fn search_ground(
             Err(error) => return Err(error.into()),
         }
         progress.advance(1);
+        if stop.load(Ordering::Relaxed) {
+            break;
+        }
     }
     let points: Vec<(f64, f64)> = best.iter().map(|b| (b.reported_hz, b.cost)).collect();
     for index in front(&points) {
@@ -175,16 +231,14 @@ fn pads(study: &Study, wanted: &Wanted) -> Result<Layout, SearchError> {
 /// hold alternate energies of every ring.
 fn planes(gamma: &Weighted, threshold_pe: impl Fn(usize) -> f64) -> Planes {
     let sample = &gamma.sample;
-    let mut numbers = std::collections::BTreeMap::new();
-    let mut number = |ring: usize| {
-        let next = numbers.entry(ring).or_insert(0_u32);
-        *next += 1;
-        *next - 1
-    };
+    // Alternate within a ring, and from repetition to repetition, so that either half holds every
+    // energy.
+    let (rings, once) = (sample.throw.rings_m.len(), sample.throw.word_count());
+    let number = |word: usize| (word / rings + (word / once) * (1 + once / rings % 2)) as u32;
     Planes {
         columns: (0..sample.pads.len()).map(|c| sample.plane(c, threshold_pe(c))).collect(),
         weights: vec![rates::event_rates(&sample.words, &gamma.spectrum)],
-        showers: sample.words.iter().map(|word| number(word.ring)).collect(),
+        showers: (0..sample.words.len()).map(number).collect(),
     }
 }
 

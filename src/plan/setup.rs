@@ -24,6 +24,13 @@ const THROWN_INDEX: f64 = 1.5;
 /// extrapolated by the warning on the outermost ring.
 const REACH_M: f64 = 420.0;
 
+/// Centre and extent of the telescopes are rounded to this, m, so that a pad more or less does not
+/// move the throw and a stored table can be extended.
+const ROUNDED_M: f64 = 50.0;
+/// Words of a ring in one repetition of a throw: more showers are more repetitions, which extend a
+/// stored table.
+const REPEATED_WORDS: usize = 64;
+
 /// The band in which the light pool is reported, nm.
 pub const POOL_BAND_NM: (f64, f64) = (300.0, 600.0);
 /// Radius of the disc on which the light of single muons is averaged for the pool, m.
@@ -115,12 +122,14 @@ pub fn thresholds_pe(study: &Study, sky_per_ns: &[f64]) -> Vec<f64> {
         .collect()
 }
 
-pub fn gamma_throw(study: &Study, columns: &[Column]) -> Throw {
+/// How gammas are thrown, and how often the throw is repeated.
+pub fn gamma_throw(study: &Study, columns: &[Column]) -> (Throw, usize) {
     let energy_gev = study.budget.gamma_energy_gev;
     throw(study, Species::Gamma, energy_gev, 0.0, study.budget.gamma_showers, columns)
 }
 
-pub fn background_throw(study: &Study, species: Species, columns: &[Column]) -> Throw {
+/// How a background is thrown, and how often the throw is repeated.
+pub fn background_throw(study: &Study, species: Species, columns: &[Column]) -> (Throw, usize) {
     let cone = radians(study.pointing.cone_half_angle_deg);
     let energy_gev = study.budget.background_energy_gev;
     throw(study, species, energy_gev, cone, study.budget.background_showers, columns)
@@ -133,19 +142,26 @@ fn throw(
     cone_rad: f64,
     showers: u64,
     columns: &[Column],
-) -> Throw {
-    let count = columns.len() as f64;
-    let mean = |axis: usize| columns.iter().map(|c| c.position_m[axis]).sum::<f64>() / count;
-    let centre_m = [mean(0), mean(1)];
+) -> (Throw, usize) {
+    let middle = |axis: usize| {
+        let places = || columns.iter().map(|column| column.position_m[axis]);
+        let (low, high) =
+            (places().fold(f64::INFINITY, f64::min), places().fold(f64::NEG_INFINITY, f64::max));
+        (0.5 * (low + high) / ROUNDED_M).round() * ROUNDED_M
+    };
+    let centre_m = [middle(0), middle(1)];
     let extent = columns
         .iter()
         .map(|c| (c.position_m[0] - centre_m[0]).hypot(c.position_m[1] - centre_m[1]))
         .fold(0.0, f64::max);
+    let extent = (extent / ROUNDED_M).ceil() * ROUNDED_M;
     let secant = 1.0 / radians(study.pointing.zenith_deg).cos();
     let outer = study.budget.impact_radius_m.unwrap_or(extent + REACH_M * secant);
     let rings_m = vec![0.3 * outer, 0.6 * outer, outer];
     let words = (showers as usize).div_ceil(SHOWERS_PER_WORD * rings_m.len()).max(8);
-    Throw {
+    let repetitions = words.div_ceil(REPEATED_WORDS);
+    let words = words.min(REPEATED_WORDS);
+    let throw = Throw {
         species,
         seed: study.seed,
         energy_gev: (energy_gev[0], energy_gev[1]),
@@ -155,7 +171,8 @@ fn throw(
         centre_m,
         rings_m,
         words,
-    }
+    };
+    (throw, repetitions)
 }
 
 /// A stream for tables of the report, by purpose and number.

@@ -5,6 +5,7 @@
 
 pub mod charts;
 pub mod figures;
+mod found;
 mod geography;
 mod hazards;
 mod page;
@@ -13,13 +14,14 @@ mod result;
 mod stage;
 mod tables;
 
+pub use found::{build_up_table, found_files, front_table};
 pub use geography::layouts_geojson;
 pub use hazards::HAZARDS;
 pub use page::page;
 pub use provenance::{ranking_json, run_json};
 pub use result::{
-    Approximation, AreaRow, Counter, KindRow, LayoutMap, LayoutRow, Model, PlacedTelescope,
-    PlanResult, PoolRow, Provenance, RateRow, SiteSummary,
+    Approximation, AreaRow, Counter, FoundRow, KindRow, LayoutMap, LayoutRow, Model,
+    PlacedTelescope, PlanResult, PoolRow, Provenance, RateRow, SiteSummary, StageRow,
 };
 pub use stage::{ReportError, check_destination, files, write_all, write_files};
 pub use tables::{Table, effective_area_table, light_pool_table, ranking_table, rate_table};

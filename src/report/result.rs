@@ -208,6 +208,38 @@ pub struct KindRow {
     pub topology: String,
 }
 
+/// The best layout of one number of telescopes that a search found.
+#[derive(Clone, Debug, Default, PartialEq)]
+pub struct FoundRow {
+    /// Number of telescopes.
+    pub telescopes: usize,
+    /// Cost in the study's unit.
+    pub cost: f64,
+    /// Rate on the showers that were searched, Hz: optimistic.
+    pub searched_rate_hz: f64,
+    /// Rate on showers that the search did not see, Hz.
+    pub gamma_rate_hz: f64,
+    /// Whether no cheaper one of these has a higher rate.
+    pub on_front: bool,
+}
+
+/// One telescope of a found layout, in the order of building.
+#[derive(Clone, Debug, Default, PartialEq)]
+pub struct StageRow {
+    /// Number of telescopes of the layout.
+    pub telescopes: usize,
+    /// Place in the order, from 1.
+    pub stage: usize,
+    /// Kind.
+    pub kind: String,
+    /// East, north, up, m.
+    pub position_m: [f64; 3],
+    /// Rate with it and all before it, Hz.
+    pub gamma_rate_hz: f64,
+    /// Share of the whole layout's rate that is lost when it is out.
+    pub loss_if_out: f64,
+}
+
 /// The positions of a layout.
 #[derive(Clone, Debug, Default, PartialEq)]
 pub struct LayoutMap {

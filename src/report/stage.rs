@@ -6,7 +6,7 @@ use std::path::{Path, PathBuf};
 use thiserror::Error;
 
 use super::page::page;
-use super::result::PlanResult;
+use super::result::{PlanResult, Provenance};
 use super::{charts, geography, provenance, tables};
 
 /// A report that could not be written.
@@ -71,22 +71,13 @@ pub fn check_destination(folder: &Path) -> Result<(), ReportError> {
 /// # Errors
 /// [`ReportError::Table`].
 pub fn files(result: &PlanResult) -> Result<Vec<(String, Vec<u8>)>, ReportError> {
-    let mut files: Vec<(String, Vec<u8>)> = Vec::new();
     let both = [
         tables::ranking_table(result),
         tables::effective_area_table(result),
         tables::rate_table(result),
         tables::light_pool_table(result),
     ];
-    for table in both {
-        let name = table.name;
-        let fault = |error: polars::prelude::PolarsError| ReportError::Table {
-            name,
-            problem: error.to_string(),
-        };
-        files.push((format!("{name}.csv"), table.csv().map_err(fault)?));
-        files.push((format!("{name}.parquet"), table.parquet(&result.provenance).map_err(fault)?));
-    }
+    let mut files = table_files(both, &result.provenance)?;
     let drawn = [
         ("ranking.svg", charts::ranking_chart(result)),
         ("effective_area.svg", charts::effective_area_chart(result)),
@@ -101,10 +92,26 @@ pub fn files(result: &PlanResult) -> Result<Vec<(String, Vec<u8>)>, ReportError>
     Ok(files)
 }
 
-/// Writes a report into a folder.
-///
-/// All files are written into a hidden folder inside the destination first; then each is renamed
-/// to its place. An interrupted run leaves every earlier file whole.
+/// Each table as CSV and as Parquet.
+pub(super) fn table_files<const N: usize>(
+    tables: [tables::Table; N],
+    from: &Provenance,
+) -> Result<Vec<(String, Vec<u8>)>, ReportError> {
+    let mut files = Vec::new();
+    for table in tables {
+        let name = table.name;
+        let fault = |error: polars::prelude::PolarsError| ReportError::Table {
+            name,
+            problem: error.to_string(),
+        };
+        files.push((format!("{name}.csv"), table.csv().map_err(fault)?));
+        files.push((format!("{name}.parquet"), table.parquet(from).map_err(fault)?));
+    }
+    Ok(files)
+}
+
+/// Writes a report into a folder: all files beside their places first, then each renamed
+/// (see [`crate::staging`]). An interrupted run leaves every earlier file whole.
 ///
 /// # Errors
 /// [`ReportError`] if a file cannot be made, written or renamed.
@@ -117,30 +124,8 @@ pub fn write_all(folder: &Path, result: &PlanResult) -> Result<(), ReportError> 
 /// # Errors
 /// [`ReportError`] if a file cannot be written or renamed.
 pub fn write_files(folder: &Path, files: &[(String, Vec<u8>)]) -> Result<(), ReportError> {
-    let destination = |cause: std::io::Error| ReportError::Destination {
-        path: folder.to_owned(),
-        problem: format!("cannot be written: {cause}"),
-    };
-    fs::create_dir_all(folder).map_err(destination)?;
-    let staging = folder.join(format!(".staging-{}", std::process::id()));
-    fs::create_dir(&staging).map_err(destination)?;
-    let written = place(folder, &staging, files);
-    // Left-overs of a failed run are of no use to anybody; the first error is the one to tell.
-    let removed = fs::remove_dir_all(&staging);
-    written?;
-    removed.map_err(|cause| ReportError::Write { path: staging, cause })
-}
-
-fn place(folder: &Path, staging: &Path, files: &[(String, Vec<u8>)]) -> Result<(), ReportError> {
-    for (name, bytes) in files {
-        let path = staging.join(name);
-        let sync = fs::write(&path, bytes).and_then(|()| fs::File::open(&path)?.sync_all());
-        sync.map_err(|cause| ReportError::Write { path, cause })?;
-    }
-    for (name, _) in files {
-        let path = folder.join(name);
-        let renamed = fs::rename(staging.join(name), &path);
-        renamed.map_err(|cause| ReportError::Write { path, cause })?;
-    }
-    Ok(())
+    let files: Vec<(String, &[u8])> =
+        files.iter().map(|(name, bytes)| (name.clone(), bytes.as_slice())).collect();
+    crate::staging::write_files(folder, &files)
+        .map_err(|(path, cause)| ReportError::Write { path, cause })
 }

@@ -15,16 +15,16 @@ pub struct Table {
 }
 
 impl Table {
-    fn new(name: &'static str) -> Self {
+    pub(super) fn new(name: &'static str) -> Self {
         Self { name, columns: Vec::new(), units: Vec::new() }
     }
 
-    fn text(mut self, name: &'static str, values: Vec<String>) -> Self {
+    pub(super) fn text(mut self, name: &'static str, values: Vec<String>) -> Self {
         self.columns.push(Column::new(name.into(), values));
         self
     }
 
-    fn whole(mut self, name: &'static str, values: impl Iterator<Item = usize>) -> Self {
+    pub(super) fn whole(mut self, name: &'static str, values: impl Iterator<Item = usize>) -> Self {
         let values: Vec<u32> = values
             .map(|value| u32::try_from(value).expect("a table has under 2^32 rows"))
             .collect();
@@ -32,7 +32,7 @@ impl Table {
         self
     }
 
-    fn number(
+    pub(super) fn number(
         mut self,
         name: &'static str,
         unit: &'static str,

@@ -63,6 +63,14 @@ pub enum TableError {
         /// Of this program.
         expected: String,
     },
+    /// The table holds events that this program would simulate otherwise.
+    #[error("{}: outdated: this program simulates other {species} events", path.display())]
+    Unlike {
+        /// The folder.
+        path: PathBuf,
+        /// The primary.
+        species: String,
+    },
     /// Parts that do not make a whole.
     #[error("parts of the {species} sample do not fit together: {what}")]
     Parts {

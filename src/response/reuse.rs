@@ -4,7 +4,7 @@ use std::path::Path;
 
 use super::error::TableError;
 use super::sample::Sample;
-use super::scene::Scene;
+use super::scene::{Column, Scene};
 use super::store;
 use super::table::{ResponseTable, TableBuilder, TableStamp};
 use super::throw::Throw;
@@ -13,6 +13,10 @@ use super::throw::Throw;
 /// table in a folder as far as it goes. Missing pads, repetitions and primaries are simulated, and
 /// the table on disk is extended by them. A sample that was thrown otherwise is made again.
 ///
+/// Before a stored sample is used, its first word is simulated again and compared, so that a table
+/// made by other physics under the same version number is found out. With `rebuild`, what is there
+/// is not read but replaced.
+///
 /// The result is the same, bit for bit, whatever the folder held; `tick` is called once for each
 /// word that had to be simulated (twice if a word is seen by pads new and old).
 ///
@@ -20,16 +24,17 @@ use super::throw::Throw;
 /// A sample for each throw, in their order; columns in the order of the scene.
 ///
 /// # Errors
-/// [`TableError`]: a table that is damaged, foreign or outdated is refused, not replaced; remove it,
-/// or ask [`store::write`] to, if a rebuild is wanted.
+/// [`TableError`]: a table that is damaged, foreign or outdated is refused, not replaced.
 pub fn samples(
     folder: &Path,
     stamp: &TableStamp,
     scene: &Scene<'_>,
     throws: &[(Throw, usize)],
+    rebuild: bool,
     tick: &(dyn Fn() + Sync),
 ) -> Result<Vec<Sample>, TableError> {
     let older = match store::read(folder, Some(stamp)) {
+        _ if rebuild => Vec::new(),
         Ok(table) => table.samples,
         Err(TableError::Missing { .. }) => Vec::new(),
         Err(error) => return Err(error),
@@ -38,9 +43,13 @@ pub fn samples(
         throws.iter().any(|(throw, _)| throw.species == sample.species && *throw == sample.throw)
     };
     let asked = |sample: &Sample| throws.iter().any(|(throw, _)| throw.species == sample.species);
-    let replaced = older.iter().any(|sample| asked(sample) && !fits(sample));
+    for sample in older.iter().filter(|sample| fits(sample)) {
+        check_first_word(folder, scene, sample)?;
+    }
+    let replaced = rebuild || older.iter().any(|sample| asked(sample) && !fits(sample));
     let kept: Vec<Sample> =
         older.into_iter().filter(|sample| fits(sample) || !asked(sample)).collect();
+    let fresh = replaced || kept.is_empty();
     let mut added = Vec::new();
     for (throw, repetitions) in throws {
         let known = kept.iter().find(|sample| sample.throw == *throw);
@@ -49,12 +58,33 @@ pub fn samples(
     let mut builder = TableBuilder::new();
     added.iter().cloned().chain(kept).for_each(|part| builder.insert(part));
     let table = builder.finish(stamp.clone())?;
-    if replaced {
+    if fresh {
         store::write(folder, &table)?;
     } else if !added.is_empty() {
         store::extend(folder, stamp, &added)?;
     }
     throws.iter().map(|(throw, repetitions)| select(&table, scene, throw, *repetitions)).collect()
+}
+
+/// Simulates the first word of a stored sample again, on the columns that are in both.
+fn check_first_word(folder: &Path, scene: &Scene<'_>, sample: &Sample) -> Result<(), TableError> {
+    let columns = scene.columns.iter().zip(scene.pads());
+    let common: Vec<(&Column, usize)> = columns
+        .filter_map(|(column, pad)| sample.column(&pad).map(|place| (column, place)))
+        .collect();
+    let again = scene.with_columns(common.iter().map(|(column, _)| (*column).clone()).collect());
+    let again = Sample::simulate_words(&again, &sample.throw, 0..1, &|| {});
+    let same = common.iter().enumerate().all(|(index, &(_, place))| {
+        let images = &sample.images[place];
+        let of_first =
+            images.partition_point(|cell| (cell.event as usize) < super::EVENTS_PER_WORD);
+        again.margins[index] == sample.margins[place][..super::EVENTS_PER_WORD]
+            && again.images[index] == images[..of_first]
+    });
+    if same && again.words[0].energy_gev == sample.words[0].energy_gev {
+        return Ok(());
+    }
+    Err(TableError::Unlike { path: folder.into(), species: sample.species.to_string() })
 }
 
 /// Parts that a sample lacks: new pads over its words, then new words over all pads it will have.

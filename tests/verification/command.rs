@@ -4,10 +4,10 @@ use std::fs;
 use std::path::{Path, PathBuf};
 use std::process::{Command, Output, Stdio};
 
-const TINY: &str = include_str!("../data/tiny.toml");
+pub const TINY: &str = include_str!("../data/tiny.toml");
 
 /// An empty folder of a test's own.
-fn folder(name: &str) -> PathBuf {
+pub fn folder(name: &str) -> PathBuf {
     let folder = Path::new(env!("CARGO_TARGET_TMPDIR")).join(format!("command-{name}"));
     if folder.exists() {
         fs::remove_dir_all(&folder).unwrap();
@@ -16,7 +16,7 @@ fn folder(name: &str) -> PathBuf {
     folder
 }
 
-fn nightpool(folder: &Path, arguments: &[&str]) -> Output {
+pub fn nightpool(folder: &Path, arguments: &[&str]) -> Output {
     Command::new(env!("CARGO_BIN_EXE_nightpool"))
         .current_dir(folder)
         .args(arguments)
@@ -25,12 +25,18 @@ fn nightpool(folder: &Path, arguments: &[&str]) -> Output {
 }
 
 /// Names of all that is in a folder.
-fn names(folder: &Path) -> Vec<String> {
+pub fn names(folder: &Path) -> Vec<String> {
     let entries = fs::read_dir(folder).unwrap();
     let mut names: Vec<String> =
         entries.map(|entry| entry.unwrap().file_name().into_string().unwrap()).collect();
     names.sort();
     names
+}
+
+/// Names and bytes of the files in a folder, without those of its folders.
+pub fn contents(folder: &Path) -> Vec<(String, Vec<u8>)> {
+    let files = names(folder).into_iter().filter(|name| folder.join(name).is_file());
+    files.map(|name| (name.clone(), fs::read(folder.join(&name)).unwrap())).collect()
 }
 
 /// Runs a study that must be refused: exit code 2, every part in one message, nothing written.
@@ -213,12 +219,12 @@ fn verify_tables_are_the_same_bytes_for_any_number_of_threads() {
         assert!(output.status.success(), "{}", String::from_utf8_lossy(&output.stderr));
         assert!(output.stdout.is_empty() && output.stderr.is_empty());
     }
-    let first = names(&folder.join("out1"));
-    assert!(first.len() >= 12, "{first:?}");
-    for name in &first {
-        let bytes = |out: &str| fs::read(folder.join(out).join(name)).unwrap();
-        assert!(bytes("out1") == bytes("out2"), "{name}: 2 threads");
-        assert!(bytes("out1") == bytes("out8"), "{name}: 8 threads");
+    let first = contents(&folder.join("out1"));
+    assert!(first.len() >= 12);
+    for (name, bytes) in &first {
+        let of = |out: &str| fs::read(folder.join(out).join(name)).unwrap();
+        assert!(*bytes == of("out2"), "{name}: 2 threads");
+        assert!(*bytes == of("out8"), "{name}: 8 threads");
     }
     let other = ["plan", "study.toml", "--out", "other", "--seed", "4", "--json"];
     let output = nightpool(&folder, &other);
@@ -235,12 +241,7 @@ fn verify_an_interrupted_run_leaves_earlier_outputs_whole() {
     let arguments = ["plan", "study.toml", "--out", "out", "--quiet"];
     assert!(nightpool(&folder, &arguments).status.success());
     let out = folder.join("out");
-    let read = || -> Vec<(String, Vec<u8>)> {
-        names(&out)
-            .into_iter()
-            .map(|name| (name.clone(), fs::read(out.join(name)).unwrap()))
-            .collect()
-    };
+    let read = || contents(&out);
     let before = read();
     let large = TINY.replace("_showers = 64", "_showers = 100_000");
     fs::write(folder.join("large.toml"), large).unwrap();

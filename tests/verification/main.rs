@@ -10,5 +10,6 @@ mod muon_light;
 mod rates;
 mod report;
 mod response;
+mod response_command;
 mod response_scene;
 mod telescope;

@@ -126,7 +126,7 @@ fn verify_a_table_used_again_gives_the_same_samples() {
             simulated.fetch_add(1, Ordering::Relaxed);
         };
         let samples = on_scene(["broad", "narrow"], spots, |scene| {
-            reuse::samples(&folder.0, &stamp(), scene, throws, &tick).unwrap()
+            reuse::samples(&folder.0, &stamp(), scene, throws, false, &tick).unwrap()
         });
         (samples, simulated.into_inner())
     };

@@ -9,7 +9,7 @@
 mod frames;
 mod manifest;
 
-use std::io::{Cursor, Write};
+use std::io::Cursor;
 use std::path::Path;
 
 use polars::io::parquet::write::KeyValueMetadata;
@@ -35,16 +35,18 @@ const ROWS_PER_GROUP: usize = 1 << 18;
 /// # Errors
 /// [`TableError`] if a file cannot be written.
 pub fn write(folder: &Path, table: &ResponseTable) -> Result<(), TableError> {
-    let older = Manifest::read(folder).map(|list| list.blocks).unwrap_or_default();
     let mut list = Manifest::new(&table.stamp);
     for sample in &table.samples {
         list.blocks.push(write_block(folder, &table.stamp, sample)?);
     }
     place(&folder.join(MANIFEST), &list.sealed())?;
     let kept: Vec<&str> = names(&list.blocks).collect();
-    for name in names(&older).filter(|name| !kept.contains(name)) {
-        // A file that is no longer listed is harmless; failing to remove it is too.
-        let _ = std::fs::remove_file(folder.join(name));
+    for entry in std::fs::read_dir(folder).into_iter().flatten().flatten() {
+        let name = entry.file_name().to_string_lossy().into_owned();
+        if is_ours(&name) && !kept.contains(&name.as_str()) {
+            // A file that is no longer listed is harmless; failing to remove it is too.
+            let _ = std::fs::remove_file(entry.path());
+        }
     }
     Ok(())
 }
@@ -85,6 +87,15 @@ pub fn read(folder: &Path, expected: Option<&TableStamp>) -> Result<ResponseTabl
         builder.insert(read_block(folder, block)?);
     }
     builder.finish(list.stamp())
+}
+
+/// Whether a file is named as [`write_block`] names them.
+fn is_ours(name: &str) -> bool {
+    let Some(stem) = name.strip_suffix(".parquet") else { return false };
+    let mut pieces = stem.rsplit('-');
+    let hash = pieces.next().unwrap_or_default();
+    let what = pieces.next().unwrap_or_default();
+    hash.len() == 12 && ["words", "pads", "margins", "images"].contains(&what)
 }
 
 fn names(blocks: &[Block]) -> impl Iterator<Item = &str> {
@@ -147,28 +158,19 @@ fn parquet(
     Ok(bytes)
 }
 
-/// Writes bytes beside a path and renames them onto it; leaves a file of the same bytes alone.
+/// Writes one file beside its place and renames it; leaves a file of the same bytes alone.
 fn place(path: &Path, bytes: &[u8]) -> Result<(), TableError> {
     let failed = |source| TableError::Io { path: path.into(), source };
     let same_length = std::fs::metadata(path).is_ok_and(|found| found.len() == bytes.len() as u64);
     if same_length && std::fs::read(path).map_err(failed)? == bytes {
         return Ok(());
     }
-    if let Some(folder) = path.parent() {
-        std::fs::create_dir_all(folder).map_err(failed)?;
-    }
-    let mut beside = path.as_os_str().to_owned();
-    beside.push(format!(".{}.part", std::process::id()));
-    let write = || {
-        let mut file = std::fs::File::create(&beside)?;
-        file.write_all(bytes)?;
-        file.sync_all()?;
-        std::fs::rename(&beside, path)
+    let (Some(folder), Some(name)) = (path.parent(), path.file_name()) else {
+        return Err(failed(std::io::Error::from(std::io::ErrorKind::InvalidFilename)));
     };
-    write().map_err(|source| {
-        let _ = std::fs::remove_file(&beside);
-        failed(source)
-    })
+    let name = name.to_string_lossy().into_owned();
+    crate::staging::write_files(folder, &[(name, bytes)])
+        .map_err(|(path, source)| TableError::Io { path, source })
 }
 
 /// Reads one block, every byte checked.
