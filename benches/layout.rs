@@ -67,7 +67,7 @@ fn scoring(criterion: &mut Criterion) {
 fn searching(criterion: &mut Criterion) {
     let problem = problem();
     let settings =
-        Settings { telescopes: 8, fixed: Vec::new(), restarts: 4, steps: 4_000, seed: 1 };
+        Settings { telescopes: 8, fixed: Vec::new(), restarts: 8, steps: 30_000, seed: 1 };
     let mut group = criterion.benchmark_group("search");
     group.sample_size(10);
     group.bench_function("C(400, 8), 100,000 events", |bencher| {

@@ -1,121 +1,38 @@
-//! The array's vote and weighted counts of it, fast.
-//!
-//! Planes are read in blocks of `BLOCK` words. A block of bit-sliced counters stays in the first
-//! cache, and loops over its lanes have fixed length, so the compiler turns them into vector
-//! instructions. Counts by word are exact; rates are summed in the order of words.
+//! Votes and rates of layouts, and what a search maximises.
 
 use super::condition::Condition;
 use super::cost::Tariff;
 use super::events::Planes;
+use super::lanes::{Tally, common_sum, kept, kept_sum};
 
-/// Words treated together.
-const BLOCK: usize = 64;
-/// Digits of the bit-sliced counters: up to 255 telescopes.
-const DIGITS: usize = 8;
-
-type Lanes = [u64; BLOCK];
-
-/// Adds a plane's block into bit-sliced counters that hold up to `2^digits - 1`.
-#[inline]
-fn add(counter: &mut [Lanes; DIGITS], digits: usize, plane: &Lanes) {
-    let mut carry = *plane;
-    for digit in &mut counter[..digits] {
-        for (lane, bits) in digit.iter_mut().zip(&mut carry) {
-            let sum = *lane ^ *bits;
-            *bits &= *lane;
-            *lane = sum;
-        }
-    }
-}
-
-/// Lanes whose count is at least `least`.
-#[inline]
-fn not_less(counter: &[Lanes; DIGITS], digits: usize, least: usize) -> Lanes {
-    let (mut greater, mut equal) = ([0_u64; BLOCK], [u64::MAX; BLOCK]);
-    if least >> digits > 0 {
-        return greater;
-    }
-    for digit in (0..digits).rev() {
-        let lanes = greater.iter_mut().zip(&mut equal).zip(&counter[digit]);
-        if (least >> digit) & 1 == 1 {
-            lanes.for_each(|((_, e), bits)| *e &= bits);
-        } else {
-            lanes.for_each(|((g, e), bits)| {
-                *g |= *e & bits;
-                *e &= !bits;
-            });
-        }
-    }
-    for (g, e) in greater.iter_mut().zip(&equal) {
-        *g |= e;
-    }
-    greater
-}
-
-#[inline]
-fn block(plane: &[u64], start: usize) -> Lanes {
-    let mut lanes = [0; BLOCK];
-    let there = &plane[start..plane.len().min(start + BLOCK)];
-    lanes[..there.len()].copy_from_slice(there);
-    lanes
-}
-
-/// Set bits of each lane by adding neighbours: pairs, fours, bytes, then one multiplication.
+/// Events in which at least `least` of the planes fire, one bit an event.
 ///
-/// # Source
-/// Warren 2013, Hacker's Delight, ch. 5. Written out because the baseline x86-64 has no population
-/// count, and because additions run on all lanes at once.
-#[inline]
-fn ones(bits: u64) -> u64 {
-    let pairs = bits - ((bits >> 1) & 0x5555_5555_5555_5555);
-    let fours = (pairs & 0x3333_3333_3333_3333) + ((pairs >> 2) & 0x3333_3333_3333_3333);
-    let bytes = (fours + (fours >> 4)) & 0x0F0F_0F0F_0F0F_0F0F;
-    let sums = bytes + (bytes >> 8);
-    let sums = sums + (sums >> 16);
-    (sums + (sums >> 32)) & 0x7F
+/// # Shape
+/// All planes have one u64 a word.
+///
+/// # Panics
+/// With more than 255 planes.
+pub fn at_least(planes: &[&[u64]], least: usize) -> Vec<u64> {
+    let words = planes.first().map_or(0, |plane| plane.len());
+    kept(&[Tally { planes: planes.to_vec(), least }], words)
 }
 
-/// Sum over lanes of weight x set bits, in sixteen interleaved partial sums of fixed order.
-#[inline]
-fn weighted(lanes: &Lanes, weights: &[f64]) -> f64 {
-    let mut counts = [0.0_f64; BLOCK];
-    for (count, bits) in counts.iter_mut().zip(lanes) {
-        // Exact: a count below 2^52 in the mantissa of 2^52.
-        *count = f64::from_bits(0x4330_0000_0000_0000 | ones(*bits)) - 4_503_599_627_370_496.0;
-    }
-    if weights.len() < BLOCK {
-        return counts.iter().zip(weights).map(|(count, weight)| count * weight).sum();
-    }
-    let mut sums = [0.0_f64; 16];
-    for (counts, weights) in counts.chunks_exact(16).zip(weights.chunks_exact(16)) {
-        for ((sum, count), weight) in sums.iter_mut().zip(counts).zip(weights) {
-            *sum += count * weight;
-        }
-    }
-    sums.iter().sum()
-}
-
-/// The least number of digits that hold a count.
-fn digits_of(most: usize) -> usize {
-    (usize::BITS - most.leading_zeros()) as usize
-}
-
-/// Events of a block that the members' votes keep.
-#[inline]
-fn kept(columns: &[&[u64]], kinds: &[usize], condition: &Condition, start: usize) -> Lanes {
-    let digits = digits_of(columns.len());
-    let mut out = [u64::MAX; BLOCK];
-    for clause in &condition.clauses {
-        let mut counter = [[0_u64; BLOCK]; DIGITS];
-        let mut added = 0_usize;
-        for (column, _) in columns.iter().zip(kinds).filter(|(_, kind)| clause.counts(**kind)) {
-            added += 1;
-            add(&mut counter, digits_of(added), &block(column, start));
-        }
-        let passed = not_less(&counter, digits, clause.least);
-        out.iter_mut().zip(&passed).for_each(|(all, lane)| *all &= lane);
-    }
-    out
+/// A tally for each clause of a condition.
+fn tallies<'a>(
+    planes: &'a Planes,
+    members: &[usize],
+    kinds: &[usize],
+    condition: &Condition,
+) -> Vec<Tally<'a>> {
+    let of = |clause: &super::Clause| Tally {
+        planes: members
+            .iter()
+            .filter(|&&member| clause.counts(kinds[member]))
+            .map(|&member| planes.columns[member].as_slice())
+            .collect(),
+        least: clause.least,
+    };
+    condition.clauses.iter().map(of).collect()
 }
 
 /// Events that a layout keeps, one bit an event.
@@ -128,15 +45,7 @@ pub fn vote(
     kinds: &[usize],
     condition: &Condition,
 ) -> Vec<u64> {
-    assert!(members.len() < 1 << DIGITS, "at most 255 telescopes vote");
-    let columns: Vec<&[u64]> = members.iter().map(|&m| planes.columns[m].as_slice()).collect();
-    let kinds: Vec<usize> = members.iter().map(|&member| kinds[member]).collect();
-    let mut out = Vec::with_capacity(planes.words() + BLOCK);
-    for start in (0..planes.words()).step_by(BLOCK) {
-        out.extend_from_slice(&kept(&columns, &kinds, condition, start));
-    }
-    out.truncate(planes.words());
-    out
+    kept(&tallies(planes, members, kinds, condition), planes.words())
 }
 
 /// Trigger rate of a layout for one of the spectra, Hz.
@@ -150,68 +59,54 @@ pub fn rate_hz(
     kinds: &[usize],
     condition: &Condition,
 ) -> f64 {
-    assert!(members.len() < 1 << DIGITS, "at most 255 telescopes vote");
-    let columns: Vec<&[u64]> = members.iter().map(|&m| planes.columns[m].as_slice()).collect();
-    let kinds: Vec<usize> = members.iter().map(|&member| kinds[member]).collect();
-    let weights = &planes.weights[spectrum];
-    let blocks = (0..planes.words()).step_by(BLOCK).map(|start| {
-        let end = weights.len().min(start + BLOCK);
-        weighted(&kept(&columns, &kinds, condition, start), &weights[start..end])
-    });
-    blocks.sum()
+    kept_sum(&tallies(planes, members, kinds, condition), &planes.weights[spectrum])
 }
 
 /// What each word adds to a layout's rate, Hz.
 pub fn word_rates(planes: &Planes, spectrum: usize, kept: &[u64]) -> Vec<f64> {
     let weights = &planes.weights[spectrum];
-    kept.iter().zip(weights).map(|(bits, weight)| ones(*bits) as f64 * weight).collect()
+    kept.iter().zip(weights).map(|(bits, weight)| f64::from(bits.count_ones()) * weight).collect()
 }
 
 /// The vote of a layout with one place open: the rate with any column there is one pass over that
-/// column, since a clause holds if it holds already or lacks one vote and the newcomer gives it.
-pub(super) struct Opening {
-    /// By clause: kept without the newcomer; kept with its vote.
-    clauses: Vec<(Vec<u64>, Vec<u64>)>,
+/// column, since an event is kept if it is already, or if it lacks only the newcomer's vote.
+pub(super) struct Opening<'a> {
+    planes: &'a Planes,
+    weights: &'a [f64],
+    /// Rate without a newcomer, Hz.
+    base_hz: f64,
+    /// By kind of the newcomer: events that its vote would add.
+    gains: Vec<Vec<u64>>,
 }
 
-impl Opening {
-    pub fn new(planes: &Planes, others: &[usize], kinds: &[usize], condition: &Condition) -> Self {
-        let of = |clause: &super::Clause, less: usize| {
-            let clause = super::Clause { kinds: clause.kinds.clone(), least: clause.least - less };
-            vote(planes, others, kinds, &Condition { clauses: vec![clause] })
+impl<'a> Opening<'a> {
+    pub fn new(
+        planes: &'a Planes,
+        spectrum: usize,
+        others: &[usize],
+        kinds: &[usize],
+        condition: &Condition,
+    ) -> Self {
+        let weights = &planes.weights[spectrum];
+        let already = vote(planes, others, kinds, condition);
+        let every = vec![u64::MAX; already.len()];
+        let with = |kind: usize| {
+            let clauses = condition.clauses.iter().map(|clause| super::Clause {
+                kinds: clause.kinds.clone(),
+                least: clause.least - usize::from(clause.counts(kind) && clause.least > 0),
+            });
+            let condition = Condition { clauses: clauses.collect() };
+            let with = vote(planes, others, kinds, &condition);
+            with.iter().zip(&already).map(|(with, already)| with & !already).collect()
         };
-        let clauses = condition.clauses.iter().map(|clause| (of(clause, 0), of(clause, 1)));
-        Self { clauses: clauses.collect() }
+        let most = kinds.iter().copied().max().map_or(0, |kind| kind + 1);
+        let base_hz = common_sum(&already, &every, weights);
+        Self { planes, weights, base_hz, gains: (0..most).map(with).collect() }
     }
 
-    /// Rate with a column in the open place, Hz.
-    pub fn rate_hz(
-        &self,
-        planes: &Planes,
-        spectrum: usize,
-        column: usize,
-        kind: usize,
-        condition: &Condition,
-    ) -> f64 {
-        let weights = &planes.weights[spectrum];
-        let blocks = (0..planes.words()).step_by(BLOCK).map(|start| {
-            let end = weights.len().min(start + BLOCK);
-            let newcomer = block(&planes.columns[column], start);
-            let mut out = [u64::MAX; BLOCK];
-            for (clause, (without, with)) in condition.clauses.iter().zip(&self.clauses) {
-                let already = block(without, start);
-                if clause.counts(kind) {
-                    let short = block(with, start);
-                    for lane in 0..BLOCK {
-                        out[lane] &= already[lane] | (short[lane] & newcomer[lane]);
-                    }
-                } else {
-                    out.iter_mut().zip(&already).for_each(|(all, lane)| *all &= lane);
-                }
-            }
-            weighted(&out, &weights[start..end])
-        });
-        blocks.sum()
+    /// Rate with a column of a kind in the open place, Hz.
+    pub fn rate_hz(&self, column: usize, kind: usize) -> f64 {
+        self.base_hz + common_sum(&self.planes.columns[column], &self.gains[kind], self.weights)
     }
 }
 

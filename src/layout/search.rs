@@ -48,11 +48,15 @@ impl Found {
 
 /// The best layouts found, best first, no two the same: one a start at most.
 ///
-/// Each start anneals over exchanges of one telescope and shifts of the whole with a temperature that falls from 3 % of
-/// the score to 0.01 %, then takes the best exchange of one telescope until none helps, and on small
-/// problems the best exchange of two. Starts run in parallel, each
-/// from its own stream, so the result does not depend on the number of threads. Setting `stop`
-/// ends it soon with the best so far.
+/// Each start anneals over exchanges of one telescope and shifts of the whole with a temperature
+/// that falls from 3 % of the score to 0.01 %, then takes the best exchange of one telescope until
+/// none helps, and on small problems the best exchange of two. Starts run in parallel, each from
+/// its own stream, so the result does not depend on the number of threads. Setting `stop` ends it
+/// soon with the best so far.
+///
+/// # Validity
+/// Choose 8 of 400 with 8 starts of 20,000 steps: every seed ends within 0.5 % of the best known
+/// (`verify_large_searches_end_within_half_a_per_cent_of_the_best_for_every_seed`).
 ///
 /// # Errors
 /// [`LayoutError::Impossible`] if no start finds a layout that fits, [`LayoutError::Condition`] if
@@ -342,18 +346,22 @@ pub(super) fn newcomer_scores(
     others: &[usize],
     newcomers: impl Iterator<Item = usize>,
 ) -> Vec<(usize, f64)> {
-    let opening = |planes| Opening::new(planes, others, &problem.kinds, &problem.condition);
-    let gamma = opening(&problem.gamma);
     let (Objective::GammaRate { spectrum }
     | Objective::PerRootBackground { spectrum }
     | Objective::PerCost { spectrum }) = problem.objective;
-    let backgrounds: Vec<Opening> = match problem.objective {
-        Objective::PerRootBackground { .. } => problem.backgrounds.iter().map(opening).collect(),
+    let opening = |planes, spectrum| {
+        Opening::new(planes, spectrum, others, &problem.kinds, &problem.condition)
+    };
+    let gamma = opening(&problem.gamma, spectrum);
+    let backgrounds: Vec<Opening<'_>> = match problem.objective {
+        Objective::PerRootBackground { .. } => {
+            problem.backgrounds.iter().map(|planes| opening(planes, 0)).collect()
+        }
         _ => Vec::new(),
     };
     let score = |column: usize| {
         let kind = problem.kinds[column];
-        let rate = gamma.rate_hz(&problem.gamma, spectrum, column, kind, &problem.condition);
+        let rate = gamma.rate_hz(column, kind);
         match problem.objective {
             Objective::GammaRate { .. } => rate,
             Objective::PerCost { .. } => {
@@ -361,11 +369,7 @@ pub(super) fn newcomer_scores(
                 rate / problem.cost(&with)
             }
             Objective::PerRootBackground { .. } => {
-                let sets = backgrounds.iter().zip(&problem.backgrounds);
-                let background = sets
-                    .map(|(open, planes)| open.rate_hz(planes, 0, column, kind, &problem.condition))
-                    .sum();
-                per_root(rate, background)
+                per_root(rate, backgrounds.iter().map(|open| open.rate_hz(column, kind)).sum())
             }
         }
     };

@@ -172,8 +172,8 @@ pub fn search_ground(
         let settings = Settings {
             telescopes,
             fixed: Vec::new(),
-            restarts: 12,
-            steps: 30_000,
+            restarts: 16,
+            steps: 40_000,
             seed: study.seed,
         };
         match search(&searched, &settings, stop) {

@@ -12,4 +12,5 @@ mod report;
 mod response;
 mod response_command;
 mod response_scene;
+mod search_command;
 mod telescope;
