@@ -2,7 +2,8 @@
 
 use crate::numerics::{Stage, Stream};
 
-use super::ranking::DECISIVE;
+/// Probability of the right order above which two layouts are told apart.
+pub const DECISIVE: f64 = 0.95;
 
 /// What is drawn again to learn how far a result could have come out differently.
 #[derive(Clone, Debug, PartialEq)]
@@ -15,6 +16,19 @@ pub enum Resampling {
 }
 
 impl Resampling {
+    /// Neighbours in energy within a ring of impact distance, so that strata stay whole.
+    ///
+    /// # Shape
+    /// Ring and energy of each word. The last word of a ring of odd number is left as it is.
+    pub fn of_strata(words: impl Iterator<Item = (usize, f64)>) -> Self {
+        let mut order: Vec<(usize, f64, u32)> =
+            words.zip(0..).map(|((ring, energy), word)| (ring, energy, word)).collect();
+        order.sort_by(|a, b| a.0.cmp(&b.0).then(a.1.total_cmp(&b.1)).then(a.2.cmp(&b.2)));
+        let rings = order.chunk_by(|a, b| a.0 == b.0);
+        let pairs = rings.flat_map(|ring| ring.chunks_exact(2));
+        Self::Pairs(pairs.map(|pair| [pair[0].2, pair[1].2]).collect())
+    }
+
     /// How often each word counts in one resample; `words` in all.
     pub fn counts(&self, words: usize, seed: u64, resample: u64) -> Vec<f64> {
         let mut stream = Stream::keyed(seed, Stage::Bootstrap, &[resample]);
@@ -79,6 +93,12 @@ pub struct Comparison {
 impl Comparison {
     /// Sums what each word adds to each layout's rate over common resamples.
     ///
+    /// All layouts saw the same words, so differences are resampled in pairs.
+    ///
+    /// # Source
+    /// Efron 1979, Ann. Stat. 7, 1; common random numbers as in any text on simulation. Test:
+    /// `verify_intervals_cover_the_truth_search_winners_included`.
+    ///
     /// # Shape
     /// `word_rates[layout][word]`.
     pub fn of_rates(
@@ -96,6 +116,13 @@ impl Comparison {
             }
         }
         let scores = word_rates.iter().map(|rates| rates.iter().sum()).collect();
+        Self { scores, resampled }
+    }
+
+    /// Numbers without an error, as scores of the same resamples.
+    pub fn constant(&self, scores: Vec<f64>) -> Self {
+        let count = self.resampled.first().map_or(0, Vec::len);
+        let resampled = scores.iter().map(|&score| vec![score; count]).collect();
         Self { scores, resampled }
     }
 

@@ -24,10 +24,10 @@ impl Constraints {
     /// Whether a telescope may stand at a point, and if not why.
     pub fn ground(&self, point_m: [f64; 2]) -> Result<(), String> {
         if !self.allowed_m.is_empty() && !self.allowed_m.iter().any(|p| holds(p, point_m)) {
-            return Err("outside the boundary".into());
+            return Err("outside the site's boundary".into());
         }
         match self.forbidden_m.iter().find(|(_, outline)| holds(outline, point_m)) {
-            Some((name, _)) => Err(format!("inside {name}")),
+            Some((name, _)) => Err(format!("in excluded ground: {name}")),
             None => Ok(()),
         }
     }
@@ -67,7 +67,7 @@ impl Constraints {
 }
 
 /// Whether a point lies in a polygon, by the parity of crossings to the east.
-pub fn holds(outline: &[[f64; 2]], point: [f64; 2]) -> bool {
+fn holds(outline: &[[f64; 2]], point: [f64; 2]) -> bool {
     let mut inside = false;
     for (index, a) in outline.iter().enumerate() {
         let b = outline[(index + 1) % outline.len()];

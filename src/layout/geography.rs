@@ -2,39 +2,16 @@
 
 use std::collections::BTreeMap;
 
-use geojson::{Feature, FeatureCollection, GeoJson, Geometry, GeometryValue, JsonObject};
+use geojson::{Feature, GeoJson, GeometryValue};
 
 use super::candidate::{Candidate, Member};
 use super::condition::Condition;
 use super::error::LayoutError;
 use super::geodetic::Geodetic;
 
-/// Layouts as a feature collection; properties `layout`, `kind` and `condition`.
-pub fn to_geojson(candidates: &[Candidate], kinds: &[String], reference: Geodetic) -> String {
-    let mut features = Vec::new();
-    for candidate in candidates {
-        for member in &candidate.members {
-            let point = reference.at_local_m(member.position_m);
-            let place = vec![point.longitude_deg, point.latitude_deg, point.height_m];
-            let mut properties = JsonObject::new();
-            properties.insert("layout".into(), candidate.name.clone().into());
-            properties.insert("kind".into(), kinds[member.kind].clone().into());
-            if let [clause] = candidate.condition.clauses.as_slice() {
-                properties.insert("condition".into(), clause.least.into());
-            }
-            features.push(Feature {
-                geometry: Some(Geometry::new(GeometryValue::Point { coordinates: place.into() })),
-                properties: Some(properties),
-                ..Feature::default()
-            });
-        }
-    }
-    let collection = FeatureCollection { bbox: None, features, foreign_members: None };
-    GeoJson::from(collection).to_string()
-}
-
 /// Layouts of a feature collection of points, grouped by their property `layout`, in the order of
-/// names. Without a height a point stands on the reference point's level.
+/// names. Without a height a point stands on the reference point's level. Polygons are passed over:
+/// outlines of the site may stand in the same file.
 ///
 /// # Errors
 /// [`LayoutError::Geography`] naming the feature and what is wrong.
@@ -50,6 +27,9 @@ pub fn from_geojson(
     };
     let mut layouts: BTreeMap<String, (Vec<Member>, usize)> = BTreeMap::new();
     for (index, feature) in collection.features.iter().enumerate() {
+        if let Some(GeometryValue::Polygon { .. }) = feature.geometry.as_ref().map(|g| &g.value) {
+            continue;
+        }
         let wrong = |problem: String| fault(format!("feature {}: {problem}", index + 1));
         let (layout, member, condition) = telescope(feature, kinds, reference).map_err(wrong)?;
         let entry = layouts.entry(layout).or_insert((Vec::new(), condition));

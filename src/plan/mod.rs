@@ -14,7 +14,7 @@ use std::collections::BTreeMap;
 
 use thiserror::Error;
 
-use crate::layout::{at_least, rank};
+use crate::layout::{Comparison, Resampling, at_least};
 use crate::light::LightModel;
 use crate::rates::{self, Estimate, Spectrum, SpectrumError};
 use crate::report::PlanResult;
@@ -111,14 +111,8 @@ pub fn plan(
     if scored.iter().all(|layout| layout.gamma.value <= 0.0) {
         return Err(PlanError::Empty);
     }
-    let factors = planned.score_factors(&scored);
-    let scores: Vec<Vec<f64>> = scored
-        .iter()
-        .zip(&factors)
-        .map(|(layout, factor)| layout.gamma_words.iter().map(|rate| rate * factor).collect())
-        .collect();
-    let ranked = rank(&scores, study.ranking.resamples, study.seed);
-    Ok(rows::result(&planned, &light, &scored, &ranked, &factors, pool))
+    let ranked = planned.compared(&scored).order();
+    Ok(rows::result(&planned, &light, &scored, &ranked, pool))
 }
 
 fn simulate<'a>(
@@ -206,15 +200,40 @@ impl Planned<'_> {
         Scored { gamma_plane, gamma_words, gamma, backgrounds }
     }
 
-    /// What turns a gamma rate into the score asked for.
-    fn score_factors(&self, scored: &[Scored]) -> Vec<f64> {
-        let of_layout = |(layout, scored): (usize, &Scored)| match self.study.ranking.score.as_str()
-        {
-            "gamma_rate_per_cost" => 1.0 / self.cost(layout),
-            "gamma_rate_per_root_background" => 1.0 / scored.background().value.sqrt(),
-            _ => 1.0,
-        };
-        scored.iter().enumerate().map(of_layout).collect()
+    /// The layouts' scores on common resamples.
+    fn compared(&self, scored: &[Scored]) -> Comparison {
+        let gamma = self.resampled(&self.gamma, scored.iter().map(|s| &s.gamma_words), 0);
+        match self.study.ranking.score.as_str() {
+            "gamma_rate_per_cost" => {
+                let costs = (0..scored.len()).map(|layout| self.cost(layout)).collect();
+                gamma.combined(&gamma.constant(costs), |rate, cost| rate / cost)
+            }
+            "gamma_rate_per_root_background" => {
+                let sets = self.backgrounds.iter().enumerate().map(|(index, weighted)| {
+                    let words = scored.iter().map(|s| &s.backgrounds[index].1);
+                    self.resampled(weighted, words, 1 + index as u64)
+                });
+                let sum = sets.reduce(|a, b| a.combined(&b, |a, b| a + b));
+                let sum = sum.unwrap_or_else(|| gamma.constant(vec![f64::NAN; scored.len()]));
+                gamma.combined(&sum, |gamma, background| gamma / background.sqrt())
+            }
+            _ => gamma,
+        }
+    }
+
+    /// Rates of all layouts for one primary on common resamples; `number` sets the primaries'
+    /// resamples apart.
+    fn resampled<'a>(
+        &self,
+        weighted: &Weighted,
+        word_rates: impl Iterator<Item = &'a Vec<f64>>,
+        number: u64,
+    ) -> Comparison {
+        let words = weighted.sample.words.iter().map(|word| (word.ring, word.energy_gev));
+        let rates: Vec<Vec<f64>> = word_rates.cloned().collect();
+        let seed = self.study.seed.wrapping_add(number << 32);
+        let resamples = self.study.ranking.resamples;
+        Comparison::of_rates(&rates, &Resampling::of_strata(words), resamples, seed)
     }
 
     fn cost(&self, layout: usize) -> f64 {

@@ -1,6 +1,7 @@
 //! The plain result of a plan, row by row.
 
-use crate::layout::{Ranked, rank};
+use crate::layout::Compared;
+use crate::layout::comparison::robustness;
 use crate::light::LightModel;
 use crate::rates::{EnergyBin, differential_rates, edge_fraction, effective_areas, threshold_gev};
 use crate::report::{
@@ -17,8 +18,7 @@ pub fn result(
     planned: &Planned<'_>,
     light: &LightModel,
     scored: &[Scored],
-    ranked: &[Ranked],
-    factors: &[f64],
+    ranked: &[Compared],
     light_pool: Vec<PoolRow>,
 ) -> PlanResult {
     let mut effective_areas = Vec::new();
@@ -41,9 +41,7 @@ pub fn result(
         ranking: ranked
             .iter()
             .enumerate()
-            .map(|(rank, place)| {
-                layout_row(planned, &scored[place.layout], rank, place, factors[place.layout])
-            })
+            .map(|(rank, place)| layout_row(planned, &scored[place.layout], rank, place))
             .collect(),
         effective_areas,
         differential_rates,
@@ -56,13 +54,7 @@ pub fn result(
     }
 }
 
-fn layout_row(
-    planned: &Planned<'_>,
-    scored: &Scored,
-    rank: usize,
-    place: &Ranked,
-    factor: f64,
-) -> LayoutRow {
+fn layout_row(planned: &Planned<'_>, scored: &Scored, rank: usize, place: &Compared) -> LayoutRow {
     let layout = &planned.study.layouts[place.layout];
     let kinds = &planned.study.kinds;
     let of_kind = |kind: usize| layout.telescopes.iter().filter(|t| t.kind == kind).count();
@@ -96,7 +88,7 @@ fn layout_row(
         cost: planned.cost(place.layout),
         order_probability: place.order_probability,
         score: place.score,
-        score_error: scored.gamma.error * factor,
+        score_error: place.error,
     }
 }
 
@@ -222,7 +214,7 @@ fn counters(planned: &Planned<'_>) -> Vec<Counter> {
 
 /// What limits the numbers: light lost at the edges of the throw, and whether the order survives
 /// another light scale.
-fn warnings(planned: &Planned<'_>, scored: &[Scored], ranked: &[Ranked]) -> Vec<String> {
+fn warnings(planned: &Planned<'_>, scored: &[Scored], ranked: &[Compared]) -> Vec<String> {
     let mut warnings = Vec::new();
     let Some(best) = ranked.first() else { return warnings };
     let leader = &scored[best.layout];
@@ -269,23 +261,19 @@ fn warnings(planned: &Planned<'_>, scored: &[Scored], ranked: &[Ranked]) -> Vec<
 }
 
 /// Whether the order by gamma rate changes with all light scaled.
-fn order_at(planned: &Planned<'_>, ranked: &[Ranked], scale: f64) -> String {
-    let words: Vec<Vec<f64>> = (0..planned.study.layouts.len())
-        .map(|layout| planned.score(layout, scale).gamma_words)
-        .collect();
-    let again = rank(&words, 0, planned.study.seed);
-    let place = |layout: usize| again.iter().position(|r| r.layout == layout).unwrap_or(0);
-    let name = |r: &Ranked| planned.study.layouts[r.layout].name.as_str();
-    let flips: Vec<String> = ranked
-        .windows(2)
-        .filter(|pair| place(pair[0].layout) > place(pair[1].layout))
-        .map(|pair| format!("{} / {}", name(&pair[0]), name(&pair[1])))
-        .collect();
+fn order_at(planned: &Planned<'_>, ranked: &[Compared], scale: f64) -> String {
+    let rates = |scale: f64| -> Vec<f64> {
+        ranked.iter().map(|row| planned.score(row.layout, scale).gamma.value).collect()
+    };
+    let found = robustness(&rates(1.0), &rates(scale));
+    let name = |place: usize| planned.study.layouts[ranked[place].layout].name.as_str();
+    let flips = found.flipped.iter().map(|&(a, b)| format!("{} / {}", name(a), name(b)));
+    let flips: Vec<String> = flips.collect();
     let what = format!("with all light times {scale}");
     if flips.is_empty() {
-        format!("{what}: neighbours in the order by gamma rate keep their places")
+        format!("{what}: the order by gamma rate is the same")
     } else {
-        format!("{what}: neighbours change places: {}", flips.join("; "))
+        format!("{what}: pairs that change places by gamma rate: {}", flips.join("; "))
     }
 }
 

@@ -4,7 +4,6 @@ use std::sync::atomic::{AtomicBool, Ordering};
 
 use thiserror::Error;
 
-use crate::layout::constraint::holds;
 use crate::layout::cost::KindPrice;
 use crate::layout::generator::Pattern;
 use crate::layout::stages::{build_up, front, losses};
@@ -204,10 +203,8 @@ fn pads(study: &Study, wanted: &Wanted) -> Result<Layout, SearchError> {
     let reach = boundary.iter().map(|p| p[0].hypot(p[1])).fold(0.0, f64::max) / spacing_m;
     // Area of the disc over that of a cell, and a rim.
     let count = (core::f64::consts::PI * (reach + 2.0).powi(2) / 0.75_f64.sqrt()).ceil() as usize;
-    let free = |point: &[f64; 2]| {
-        let excluded = study.site.exclusions.iter().any(|e| holds(&e.outline_enu_m, *point));
-        holds(boundary, *point) && !excluded
-    };
+    let constraints = study.site.constraints();
+    let free = |point: &[f64; 2]| constraints.ground(*point).is_ok();
     let grid = Pattern::Triangular.positions_m(count, spacing_m);
     let points: Vec<[f64; 2]> = grid.into_iter().filter(free).collect();
     let least = wanted.telescopes.max(2);

@@ -2,27 +2,34 @@
 
 use serde_json::{Value, json};
 
-use crate::consts::EARTH_RADIUS_M;
+use crate::layout::geodetic::Geodetic;
 
 use super::result::PlanResult;
 
 /// Every telescope of every layout as a point, and the site's outlines (RFC 7946, WGS84).
 ///
-/// East and north become longitude and latitude on a sphere of the mean Earth radius, which is
-/// within 0.6 % of the ellipsoid's distances: under 3 m inside 500 m. The exact positions stand in
-/// the properties `east_m`, `north_m`, `up_m`. Altitudes are those of the study (above the sea),
-/// not above the ellipsoid.
+/// A study reads it back as `layouts_file`. The positions stand in the properties `east_m`,
+/// `north_m`, `up_m`, too. Heights are those of the study, above the sea and not above the
+/// ellipsoid.
 pub fn layouts_geojson(result: &PlanResult) -> String {
     let site = &result.site;
-    let radius = EARTH_RADIUS_M + site.altitude_m;
-    let place = |east: f64, north: f64| {
-        let latitude = site.latitude_deg + (north / radius).to_degrees();
-        let shrink = site.latitude_deg.to_radians().cos().max(1e-6);
-        [site.longitude_deg + (east / radius / shrink).to_degrees(), latitude].map(rounded)
+    let reference = Geodetic {
+        latitude_deg: site.latitude_deg,
+        longitude_deg: site.longitude_deg,
+        height_m: site.altitude_m,
+    };
+    let place = |local_m: [f64; 3]| {
+        let point = reference.at_local_m(local_m);
+        let [longitude, latitude] = [point.longitude_deg, point.latitude_deg].map(rounded);
+        [longitude, latitude, (point.height_m * 1e3).round() * 1e-3]
     };
     let mut features = Vec::new();
     let polygon = |role: &str, outline: &[[f64; 2]]| {
-        let mut ring: Vec<[f64; 2]> = outline.iter().map(|p| place(p[0], p[1])).collect();
+        let mut ring: Vec<[f64; 2]> = outline
+            .iter()
+            .map(|p| place([p[0], p[1], 0.0]))
+            .map(|[longitude, latitude, _]| [longitude, latitude])
+            .collect();
         if doubled_area(&ring) < 0.0 {
             ring.reverse();
         }
@@ -38,16 +45,17 @@ pub fn layouts_geojson(result: &PlanResult) -> String {
     }
     features.extend(site.exclusions_enu_m.iter().map(|ground| polygon("exclusion", ground)));
     for map in &result.maps {
-        let rank = result.ranking.iter().find(|row| row.layout == map.layout).map(|row| row.rank);
+        let row = result.ranking.iter().find(|row| row.layout == map.layout);
+        let (rank, condition) = (row.map(|row| row.rank), row.map(|row| row.condition));
         for (index, telescope) in map.telescopes.iter().enumerate() {
-            let [longitude, latitude] = place(telescope.east_m, telescope.north_m);
-            let coordinates = [longitude, latitude, site.altitude_m + telescope.up_m];
+            let coordinates = place([telescope.east_m, telescope.north_m, telescope.up_m]);
             features.push(json!({
                 "type": "Feature",
                 "properties": {
                     "role": "telescope",
                     "layout": map.layout,
                     "rank": rank,
+                    "condition": condition,
                     "telescope": index + 1,
                     "kind": telescope.kind,
                     "mirror_area_m2": telescope.mirror_area_m2,

@@ -1,21 +1,25 @@
 //! Candidate layouts: explicit positions and patterns over spacings.
 
+use crate::layout::generator::Pattern;
+use crate::layout::geography::from_geojson;
 use crate::telescope::TelescopeKind;
 
 use super::error::StudyError;
-use super::ground::holds;
-use super::pattern::{PATTERNS, pattern};
+use super::file::Companions;
 use super::reader::{Section, limits};
 use super::resolved::{Layout, Placed, Site};
 
 const MOST_TELESCOPES: usize = 200;
 const MOST_LAYOUTS: usize = 10_000;
+/// Coincidence window of an array unless a study says otherwise. Common practice, no source.
+const WINDOW_NS: f64 = 80.0;
 
-/// Reads `[[layout]]` and `[[layout_family]]`.
+/// Reads `[[layout]]`, `[[layout_family]]` and `layouts_file`.
 pub(super) fn layouts(
     root: &Section<'_>,
     kinds: &[TelescopeKind],
     site: &Site,
+    files: &mut Companions,
 ) -> Result<Vec<Layout>, StudyError> {
     let mut layouts: Vec<Layout> = Vec::new();
     for section in root.sections("layout")? {
@@ -27,6 +31,9 @@ pub(super) fn layouts(
         family(&section, kinds, site, &mut layouts)?;
         section.finish()?;
     }
+    if let Some(name) = root.text_if_any("layouts_file")? {
+        imported(root, name, kinds, site, files, &mut layouts)?;
+    }
     if layouts.is_empty() {
         let problem = "missing from the study; write at least one [[layout]] or [[layout_family]]";
         return Err(root.wrong("layout", problem));
@@ -34,11 +41,45 @@ pub(super) fn layouts(
     Ok(layouts)
 }
 
+/// Reads layouts of a GeoJSON file of points with the properties `layout`, `kind` and `condition`:
+/// one that a report has written, or of anybody's mapping program.
+fn imported(
+    root: &Section<'_>,
+    name: &str,
+    kinds: &[TelescopeKind],
+    site: &Site,
+    files: &mut Companions,
+    layouts: &mut Vec<Layout>,
+) -> Result<(), StudyError> {
+    const KEY: &str = "layouts_file";
+    let (path, text) = files.read(root, KEY, name)?;
+    let fault = |problem: String| root.wrong(KEY, format!("{}: {problem}", path.display()));
+    let names: Vec<String> = kinds.iter().map(|kind| kind.name.clone()).collect();
+    let candidates = from_geojson(&text, &names, site.reference());
+    for candidate in candidates.map_err(|error| fault(error.to_string()))? {
+        let least = candidate.condition.clauses.first().map_or(1, |clause| clause.least);
+        let members = candidate.members.iter().map(|member| member.kind).collect::<Vec<_>>();
+        let checked = candidate.condition.check(&members);
+        checked.map_err(|error| fault(format!("layout {}: {error}", candidate.name)))?;
+        let mut telescopes = Vec::new();
+        for member in candidate.members {
+            let placed = Placed { kind: member.kind, enu_m: member.position_m };
+            let stands = stands(&placed, &telescopes, kinds, site);
+            stands.map_err(|problem| fault(format!("layout {}: {problem}", candidate.name)))?;
+            telescopes.push(placed);
+        }
+        let (condition, window_ns) = (least, WINDOW_NS);
+        let (name, line) = (candidate.name, root.line());
+        admit(root, Layout { name, telescopes, condition, window_ns, line }, layouts)?;
+    }
+    Ok(())
+}
+
 /// Telescopes that must fire together, and within what time.
 fn condition(section: &Section<'_>, telescopes: usize) -> Result<(usize, f64), StudyError> {
     let most = telescopes.max(1) as u64;
     let condition = section.count_or("telescopes_required", 1, most, most.min(2))? as usize;
-    let window_ns = section.number_or("window_ns", limits(1.0, 10_000.0, "ns"), 80.0)?;
+    let window_ns = section.number_or("window_ns", limits(1.0, 10_000.0, "ns"), WINDOW_NS)?;
     Ok((condition, window_ns))
 }
 
@@ -89,7 +130,7 @@ fn family(
 ) -> Result<(), StudyError> {
     let name = section.text("name")?;
     let kind = kind_index(section, "telescope", kinds)?;
-    let shape = PATTERNS[section.choice("pattern", &PATTERNS)?];
+    let shape = pattern(section)?;
     let count = section.count("telescopes", 1, MOST_TELESCOPES as u64)? as usize;
     let range = limits(1.0, 5_000.0, "m");
     let missing = || section.wrong_section("no spacing; write spacings_m = [...], in metres");
@@ -103,7 +144,7 @@ fn family(
     let (condition, window_ns) = condition(section, count)?;
     for spacing in spacings {
         let mut telescopes = Vec::new();
-        for [x, y] in pattern(shape, count, spacing) {
+        for [x, y] in shape.positions_m(count, spacing) {
             // Azimuths turn from north towards east.
             let east = centre[0] + x * turn.cos() + y * turn.sin();
             let north = centre[1] - x * turn.sin() + y * turn.cos();
@@ -118,6 +159,26 @@ fn family(
         admit(section, layout, layouts)?;
     }
     Ok(())
+}
+
+/// The pattern of a family, with the numbers that some of them take.
+fn pattern(section: &Section<'_>) -> Result<Pattern, StudyError> {
+    const PATTERNS: [&str; 7] =
+        ["square", "hexagon", "ring", "line", "cross", "clusters", "graded"];
+    Ok(match section.choice("pattern", &PATTERNS)? {
+        0 => Pattern::Square,
+        1 => Pattern::Triangular,
+        2 => Pattern::Ring,
+        3 => Pattern::Line,
+        4 => Pattern::Cross,
+        5 => Pattern::Clusters {
+            members: section.count("cluster_telescopes", 1, MOST_TELESCOPES as u64)? as usize,
+            separation: section.number("cluster_separation", limits(1.0, 100.0, "spacings"))?,
+        },
+        _ => Pattern::Graded {
+            power: section.number("grading_power", limits(1.0, 4.0, "1: an even grid"))?,
+        },
+    })
 }
 
 /// Whether a telescope can stand where it is put.
@@ -140,15 +201,8 @@ fn stands(
             ));
         }
     }
-    if !site.boundary_enu_m.is_empty() && !holds(&site.boundary_enu_m, [east, north]) {
-        return Err(format!("[{east:.1}, {north:.1}] lies outside the site's boundary"));
-    }
-    match site.exclusions.iter().find(|ground| holds(&ground.outline_enu_m, [east, north])) {
-        Some(ground) => {
-            Err(format!("[{east:.1}, {north:.1}] lies in excluded ground: {}", ground.name))
-        }
-        None => Ok(()),
-    }
+    let free = site.constraints().ground([east, north]);
+    free.map_err(|place| format!("[{east:.1}, {north:.1}] lies {place}"))
 }
 
 fn admit(

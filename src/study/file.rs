@@ -113,7 +113,7 @@ fn resolved(
     let night_sky = sky::night_sky(root.section("night_sky")?)?;
     let kinds = instruments::kinds(&root, companions)?;
     let pointing = sky::pointing(root.section("pointing")?, &kinds)?;
-    let layouts = candidates::layouts(&root, &kinds, &site)?;
+    let layouts = candidates::layouts(&root, &kinds, &site, companions)?;
     let sources = sky::sources(&root)?;
     let backgrounds = sky::backgrounds(&root)?;
     let budget = budget(root.section("budget")?)?;

@@ -2,7 +2,7 @@
 
 use geojson::{GeoJson, GeometryValue};
 
-use crate::consts::EARTH_RADIUS_M;
+use crate::layout::geodetic::Geodetic;
 
 use super::error::StudyError;
 use super::file::Companions;
@@ -108,25 +108,9 @@ fn outlines(
     Ok(())
 }
 
-/// East and north of the site's reference point on a sphere of the mean Earth radius; within
-/// 0.6 % of the ellipsoid's distances, 6 m at 1 km.
+/// East and north of the site's reference point, on the ellipsoid.
 fn local_m(site: &Site, longitude_deg: f64, latitude_deg: f64) -> [f64; 2] {
-    let radius = EARTH_RADIUS_M + site.altitude_m;
-    let east = (longitude_deg - site.longitude_deg).to_radians()
-        * site.latitude_deg.to_radians().cos()
-        * radius;
-    [east, (latitude_deg - site.latitude_deg).to_radians() * radius]
-}
-
-/// Whether a point lies in a polygon, by the parity of crossings to the east.
-pub(super) fn holds(outline: &[[f64; 2]], point: [f64; 2]) -> bool {
-    let mut inside = false;
-    for (index, a) in outline.iter().enumerate() {
-        let b = outline[(index + 1) % outline.len()];
-        if (a[1] > point[1]) != (b[1] > point[1]) {
-            let crossing = a[0] + (point[1] - a[1]) / (b[1] - a[1]) * (b[0] - a[0]);
-            inside ^= point[0] < crossing;
-        }
-    }
-    inside
+    let reference = site.reference();
+    let [east, north, _] = reference.local_m(Geodetic { latitude_deg, longitude_deg, ..reference });
+    [east, north]
 }

@@ -8,7 +8,6 @@ mod error;
 mod file;
 mod ground;
 mod instruments;
-mod pattern;
 mod reader;
 mod resolved;
 mod sky;

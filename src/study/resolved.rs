@@ -3,6 +3,8 @@
 use std::path::PathBuf;
 
 use crate::atmosphere::Atmosphere;
+use crate::layout::Constraints;
+use crate::layout::geodetic::Geodetic;
 use crate::shower::Species;
 use crate::telescope::{NightSky, TelescopeKind};
 
@@ -81,6 +83,28 @@ pub struct Site {
     pub exclusions: Vec<Exclusion>,
     /// Control house, east and north in metres.
     pub control_house_enu_m: Option<[f64; 2]>,
+}
+
+impl Site {
+    /// The reference point; its altitude above the sea stands for that above the ellipsoid.
+    pub fn reference(&self) -> Geodetic {
+        Geodetic {
+            latitude_deg: self.latitude_deg,
+            longitude_deg: self.longitude_deg,
+            height_m: self.altitude_m,
+        }
+    }
+
+    /// Where telescopes may stand.
+    pub fn constraints(&self) -> Constraints {
+        let boundary = Some(&self.boundary_enu_m).filter(|outline| !outline.is_empty());
+        let excluded = self.exclusions.iter().map(|e| (e.name.clone(), e.outline_enu_m.clone()));
+        Constraints {
+            allowed_m: boundary.into_iter().cloned().collect(),
+            forbidden_m: excluded.collect(),
+            ..Constraints::default()
+        }
+    }
 }
 
 /// Ground where no telescope may stand.

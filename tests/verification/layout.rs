@@ -7,7 +7,7 @@ use nightpool::layout::candidate::{Candidate, Member};
 use nightpool::layout::comparison::robustness;
 use nightpool::layout::cost::{KindPrice, Tariff};
 use nightpool::layout::geodetic::Geodetic;
-use nightpool::layout::geography::{from_geojson, to_geojson};
+use nightpool::layout::geography::from_geojson;
 use nightpool::layout::score::{rate_hz, vote, word_rates};
 use nightpool::layout::stages::{build_up, each_subset, expected_score, front, losses};
 use nightpool::layout::{
@@ -15,6 +15,9 @@ use nightpool::layout::{
     Resampling, Settings, search,
 };
 use nightpool::numerics::{Stage, Stream};
+use nightpool::report::{
+    LayoutMap, LayoutRow, PlacedTelescope, PlanResult, SiteSummary, layouts_geojson,
+};
 
 /// Events with cores on a square, pads on a square grid with a gap: a pad fires if the core is near
 /// and the shower bright. One shower a word.
@@ -301,6 +304,26 @@ fn verify_constraints_refuse_one_spot_outside_and_over_budget() {
     assert!(matches!(check(vec![member(50.0, 0.0)]), Err(LayoutError::Condition { .. })));
 }
 
+/// The parts of a plan's result that its map is written from.
+fn written(layout: &Candidate, kinds: &[String], site: Geodetic) -> PlanResult {
+    let telescopes = layout.members.iter().map(|member| {
+        let [east_m, north_m, up_m] = member.position_m;
+        let kind = kinds[member.kind].clone();
+        PlacedTelescope { kind, mirror_area_m2: 1.0, east_m, north_m, up_m }
+    });
+    let map = LayoutMap { layout: layout.name.clone(), telescopes: telescopes.collect() };
+    let row = LayoutRow { layout: layout.name.clone(), condition: 2, ..LayoutRow::default() };
+    let square = vec![[-100.0, -100.0], [100.0, -100.0], [100.0, 100.0]];
+    let site = SiteSummary {
+        latitude_deg: site.latitude_deg,
+        longitude_deg: site.longitude_deg,
+        altitude_m: site.height_m,
+        boundary_enu_m: square,
+        ..SiteSummary::default()
+    };
+    PlanResult { site, ranking: vec![row], maps: vec![map], ..PlanResult::default() }
+}
+
 #[test]
 fn verify_local_and_geodetic_coordinates_are_inverse_and_geojson_returns_layouts() {
     let site = Geodetic { latitude_deg: -23.3, longitude_deg: 16.5, height_m: 1_800.0 };
@@ -314,7 +337,7 @@ fn verify_local_and_geodetic_coordinates_are_inverse_and_geojson_returns_layouts
         Member { position_m: [90.0, 55.0, -2.0], kind: 1 },
     ];
     let layout = Candidate { name: "two".into(), members, condition: Condition::any(2) };
-    let text = to_geojson(std::slice::from_ref(&layout), &kinds, site);
+    let text = layouts_geojson(&written(&layout, &kinds, site));
     let read = from_geojson(&text, &kinds, site).unwrap();
     assert_eq!(read[0].key(), layout.key());
     assert_eq!(read[0].condition, layout.condition);

@@ -97,3 +97,38 @@ fn verify_an_interrupted_search_writes_its_best_so_far() {
     let front = fs::read_to_string(folder.join("out/front.csv")).unwrap();
     assert!(front.lines().count() >= 2, "{front}");
 }
+
+/// A report's map is a study's list of layouts: the same layouts at the same places, to the
+/// millimetre; images are drawn anew for a millimetre's change, showers are not.
+#[test]
+fn verify_a_study_takes_its_layouts_from_the_map_of_a_report() {
+    let folder = folder("layouts-file");
+    fs::write(folder.join("study.toml"), TINY).unwrap();
+    let start = TINY.find("[[layout]]").unwrap();
+    let end = TINY.find("[pointing]").unwrap();
+    let from = "layouts_file = \"out/layouts.geojson\"\n";
+    let imported = format!("{from}{}{}", &TINY[..start], &TINY[end..]);
+    fs::write(folder.join("imported.toml"), &imported).unwrap();
+    let rates = |study: &str, out: &str| {
+        let output = nightpool(&folder, &["plan", study, "--out", out, "--json"]);
+        assert!(output.status.success(), "{}", String::from_utf8_lossy(&output.stderr));
+        let json: serde_json::Value = serde_json::from_slice(&output.stdout).unwrap();
+        let rows = json["ranking"].as_array().unwrap().iter();
+        let mut rows: Vec<(String, f64)> = rows
+            .map(|row| (row["layout"].to_string(), row["gamma_rate_hz"].as_f64().unwrap()))
+            .collect();
+        rows.sort_by(|a, b| a.0.cmp(&b.0));
+        rows
+    };
+    let (first, second) = (rates("study.toml", "out"), rates("imported.toml", "again"));
+    assert_eq!(first.len(), second.len());
+    for (a, b) in first.iter().zip(&second) {
+        assert_eq!(a.0, b.0);
+        assert!((a.1 / b.1 - 1.0).abs() < 0.1, "{a:?} {b:?}");
+    }
+    fs::write(folder.join("wrong.toml"), imported.replace("slim", "thin")).unwrap();
+    let output = nightpool(&folder, &["plan", "wrong.toml"]);
+    let message = String::from_utf8(output.stderr).unwrap();
+    assert_eq!(output.status.code(), Some(2), "{message}");
+    assert!(message.contains("layouts_file") && message.contains("slim"), "{message}");
+}
