@@ -3,9 +3,9 @@
 /// Sea-level acceleration of gravity of the standard, m/s2.
 const GRAVITY_M_S2: f64 = 9.806_65;
 /// Molar gas constant of the standard (not the modern one), J/(kmol K).
-const GAS_CONSTANT: f64 = 8_314.32;
+pub(super) const GAS_CONSTANT: f64 = 8_314.32;
 /// Mean molar mass of dry air at sea level, kg/kmol.
-const MOLAR_MASS: f64 = 28.964_4;
+pub(super) const MOLAR_MASS: f64 = 28.964_4;
 /// Effective Earth radius of the standard, m.
 const RADIUS_M: f64 = 6_356_766.0;
 
@@ -43,22 +43,34 @@ pub struct State {
     pub density_kg_m3: f64,
 }
 
+/// Acceleration of gravity of the standard, m/s2: falls with the square of the distance from the
+/// Earth's centre.
+pub fn gravity_m_s2(altitude_m: f64) -> f64 {
+    GRAVITY_M_S2 * (RADIUS_M / (RADIUS_M + altitude_m)).powi(2)
+}
+
+/// Geometric altitude of a geopotential one, m: R H / (R - H).
+pub fn geometric_altitude_m(geopotential_m: f64) -> f64 {
+    RADIUS_M * geopotential_m / (RADIUS_M - geopotential_m)
+}
+
 /// The standard atmosphere at a geometric altitude.
 ///
 /// Layer by layer, with geopotential altitude H = R z / (R + z) and molecular-scale temperature T_M
 /// linear in H: P falls as (T_b / T_M)^(g M / (R* L)), or exponentially where L = 0;
-/// rho = P M / (R* T_M).
+/// rho = P M / (R* T_M). Above 86 km the gases settle each by itself: [`super::thermosphere`].
 ///
 /// # Validity
-/// -5 to 86 km: within 0.02 % of the published table. Above, density and pressure continue with the
-/// scale height of 86 km: 30 % low at 100 km, where less than 1e-6 of the air is left.
+/// -5 to 80 km: within 0.02 % of the published table; to 1000 km 0.1 %.
 ///
 /// # Source
 /// U.S. Standard Atmosphere 1976, NOAA/NASA/USAF, equations 18, 23, 33, 42 (constants from memory;
-/// they reproduce the published layer bases). Test `validate_air_us1976_tables`.
+/// they reproduce the published layer bases). Test `validate_air_us1976_every_row`.
 pub fn state(altitude_m: f64) -> State {
-    let inside = altitude_m.min(TOP_OF_LAYERS_M);
-    let height = RADIUS_M * inside / (RADIUS_M + inside);
+    if altitude_m > TOP_OF_LAYERS_M {
+        return super::thermosphere::state(altitude_m);
+    }
+    let height = RADIUS_M * altitude_m / (RADIUS_M + altitude_m);
     let exponent = GRAVITY_M_S2 * MOLAR_MASS / GAS_CONSTANT;
     let (mut temperature, mut pressure) = (288.15, 101_325.0);
     for (index, (base, lapse)) in LAYERS.iter().enumerate() {
@@ -75,15 +87,8 @@ pub fn state(altitude_m: f64) -> State {
             break;
         }
     }
-    let mut density = pressure * MOLAR_MASS / (GAS_CONSTANT * temperature);
-    if altitude_m > TOP_OF_LAYERS_M {
-        let gravity = GRAVITY_M_S2 * (RADIUS_M / (RADIUS_M + TOP_OF_LAYERS_M)).powi(2);
-        let scale_m = GAS_CONSTANT * temperature / (MOLAR_MASS * gravity);
-        let fall = (-(altitude_m - TOP_OF_LAYERS_M) / scale_m).exp();
-        pressure *= fall;
-        density *= fall;
-    }
-    let temperature_k = temperature * molar_ratio(inside);
+    let density = pressure * MOLAR_MASS / (GAS_CONSTANT * temperature);
+    let temperature_k = temperature * molar_ratio(altitude_m);
     State { temperature_k, pressure_pa: pressure, density_kg_m3: density }
 }
 

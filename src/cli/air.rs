@@ -1,23 +1,33 @@
-//! `nightpool air`: what an atmosphere does to particles and light.
+//! `nightpool air`: what atmospheres do to particles and light.
 
-use std::fmt::Write;
+use std::io::Write;
+use std::path::{Path, PathBuf};
 
-use clap::Args;
-use serde_json::{Map, Value};
+use clap::{Args, ValueEnum};
 
-use crate::atmosphere::{Atmosphere, Extinction};
-use crate::consts::ELECTRON_MASS_GEV;
-use crate::light::cherenkov::{largest_emission_angle_rad, threshold_energy_gev};
+use crate::atmosphere::{Atmosphere, AtmosphereError, Extinction};
+use crate::light::cherenkov::{Thresholds, largest_emission_angle_rad};
+use crate::report::charts::{AirCurve, air_chart};
+use crate::report::{check_destination, write_files};
 use crate::units;
 
-use super::pool::{Format, quantity};
+use super::pool::{Switch, quantity};
+use super::rows::{Cell, Format, written_cells};
 use super::{Failure, print};
+
+/// Highest altitude of the chart, m: Cherenkov light comes from below.
+const CHART_TOP_M: f64 = 30_000.0;
+const CHART_STEP_M: f64 = 250.0;
+/// Beyond this zenith angle results are approximate.
+const STATED_TO_DEG: f64 = 70.0;
 
 /// Arguments of `air`.
 #[derive(Debug, Args)]
 pub struct AirArguments {
-    /// Atmosphere: a name, or a CSV file of altitude, pressure and temperature.
-    atmosphere: String,
+    /// Atmospheres: names, `model:LATITUDE,LONGITUDE,MONTH`, or CSV files of altitude, pressure and
+    /// temperature.
+    #[arg(required = true)]
+    atmosphere: Vec<String>,
     /// Altitudes above the sea.
     #[arg(long, value_delimiter = ',', default_value = "0m,2200m,5km,10km,20km",
           value_parser = |text: &str| quantity(units::length_m(text)))]
@@ -35,6 +45,16 @@ pub struct AirArguments {
     /// Zenith angle at which the observer sees it.
     #[arg(long, default_value = "0deg", value_parser = |text: &str| quantity(units::angle_rad(text)))]
     zenith: f64,
+    /// Scattering by molecules.
+    #[arg(long, default_value = "on")]
+    rayleigh: Switch,
+    /// Attenuation by aerosol.
+    #[arg(long, default_value = "on")]
+    aerosol: Switch,
+    /// Absorption by ozone: of the profile where it gives ozone, else of the US standard; always of
+    /// the US standard; or none.
+    #[arg(long, default_value = "profile")]
+    ozone: OzoneChoice,
     /// Vertical aerosol optical depth at 550 nm above the observer.
     #[arg(long, default_value_t = 0.04)]
     aerosol_depth: f64,
@@ -44,29 +64,52 @@ pub struct AirArguments {
     /// Scale height of the aerosol above the observer.
     #[arg(long, default_value = "1200m", value_parser = |text: &str| quantity(units::length_m(text)))]
     aerosol_height: f64,
+    /// Carbon dioxide in parts per million, for the refractivity.
+    #[arg(long, default_value_t = 450.0)]
+    co2: f64,
+    /// Draw density and refractivity of all atmospheres against altitude, beside US 1976.
+    #[arg(long, value_name = "FILE.svg")]
+    plot: Option<PathBuf>,
     /// How to print.
     #[arg(long, default_value = "table")]
     format: Format,
 }
 
-/// Prints the table.
+/// Which ozone absorbs.
+#[derive(Clone, Copy, Debug, PartialEq, Eq, ValueEnum)]
+enum OzoneChoice {
+    Profile,
+    Standard,
+    Off,
+}
+
+/// Prints the table, and draws the chart if asked to.
 pub(super) fn run(arguments: &AirArguments) -> Result<(), Failure> {
     check(arguments)?;
-    let air = atmosphere(&arguments.atmosphere)?;
+    let airs = atmospheres(arguments)?;
     let text = match (arguments.emission, arguments.observer) {
-        (Some(emission), Some(observer)) => transmissions(arguments, &air, emission, observer),
-        _ => levels(arguments, &air),
+        (Some(emission), Some(observer)) => transmissions(arguments, &airs, emission, observer),
+        _ => levels(arguments, &airs),
     };
+    if let Some(path) = &arguments.plot {
+        draw(path, &airs, arguments.wavelength[0])?;
+    }
     print(&text)
 }
 
-fn atmosphere(name: &str) -> Result<Atmosphere, Failure> {
-    let input = |message: String| Failure::Input(message);
-    if !name.contains(['.', '/']) {
-        return Atmosphere::named(name).map_err(|error| input(error.to_string()));
-    }
-    let text = std::fs::read_to_string(name).map_err(|error| input(format!("{name}: {error}")))?;
-    Atmosphere::from_text(name, &text).map_err(|error| input(error.to_string()))
+fn atmospheres(arguments: &AirArguments) -> Result<Vec<Atmosphere>, Failure> {
+    let prepared = |name: &String| {
+        let air = atmosphere(name).map_err(|error| Failure::Input(error.to_string()))?;
+        let air = air.with_co2_ppm(arguments.co2);
+        Ok(if arguments.ozone == OzoneChoice::Standard { air.with_standard_ozone() } else { air })
+    };
+    arguments.atmosphere.iter().map(prepared).collect()
+}
+
+/// A file if it looks like a path, else a name.
+fn atmosphere(name: &str) -> Result<Atmosphere, AtmosphereError> {
+    let path = !name.starts_with("model:") && name.contains(['.', '/', '\\']);
+    if path { Atmosphere::from_csv(Path::new(name)) } else { Atmosphere::named(name) }
 }
 
 fn check(arguments: &AirArguments) -> Result<(), Failure> {
@@ -79,18 +122,68 @@ fn check(arguments: &AirArguments) -> Result<(), Failure> {
     };
     for altitude in arguments.altitude.iter().chain(&arguments.emission).chain(&arguments.observer)
     {
-        within("an altitude in m", *altitude, -500.0, 110_000.0)?;
+        within("an altitude in m", *altitude, -500.0, 120_000.0)?;
     }
     for wavelength in &arguments.wavelength {
         within("a wavelength in nm", *wavelength, 250.0, 900.0)?;
     }
-    within("--zenith in rad", arguments.zenith, 0.0, units::radians(80.0))?;
+    within("--zenith in deg", units::degrees(arguments.zenith), 0.0, 80.0 + 1e-9)?;
     within("--aerosol-depth", arguments.aerosol_depth, 0.0, 5.0)?;
     within("--angstrom", arguments.angstrom, -1.0, 4.0)?;
-    within("--aerosol-height in m", arguments.aerosol_height, 10.0, 20_000.0)
+    within("--aerosol-height in m", arguments.aerosol_height, 10.0, 20_000.0)?;
+    within("--co2 in parts per million", arguments.co2, 0.0, 2_000.0)?;
+    if let (Some(emission), Some(observer)) = (arguments.emission, arguments.observer)
+        && emission <= observer
+    {
+        let message = format!("--emission {emission} m is not above --observer {observer} m");
+        return Err(Failure::Input(message));
+    }
+    if units::degrees(arguments.zenith) > STATED_TO_DEG {
+        let _ = writeln!(
+            std::io::stderr(),
+            "warning: the air is integrated exactly to 80 deg, but beyond {STATED_TO_DEG} deg light \
+             bends by a tenth of a pixel and more, and aerosol near the ground decides"
+        );
+    }
+    match &arguments.plot {
+        Some(path) => check_plot(path),
+        None => Ok(()),
+    }
 }
 
-fn levels(arguments: &AirArguments, air: &Atmosphere) -> String {
+fn check_plot(path: &Path) -> Result<(), Failure> {
+    if path.file_name().is_none() || path.is_dir() {
+        let message = format!("--plot {}: is a folder; name a file", path.display());
+        return Err(Failure::Input(message));
+    }
+    Ok(check_destination(folder(path))?)
+}
+
+fn folder(path: &Path) -> &Path {
+    match path.parent() {
+        Some(parent) if !parent.as_os_str().is_empty() => parent,
+        _ => Path::new("."),
+    }
+}
+
+/// Puts the name of each row's atmosphere before its numbers if there are several.
+fn with_names(airs: &[Atmosphere], rows: impl Fn(&Atmosphere) -> Vec<Vec<f64>>) -> Vec<Vec<Cell>> {
+    let cells = |air: &Atmosphere| {
+        let name = (airs.len() > 1).then(|| Cell::Text(air.name().to_owned()));
+        let row = move |row: Vec<f64>| {
+            name.clone().into_iter().chain(row.into_iter().map(Cell::Number)).collect()
+        };
+        rows(air).into_iter().map(row).collect::<Vec<Vec<Cell>>>()
+    };
+    airs.iter().flat_map(cells).collect()
+}
+
+fn heads<'a>(airs: &[Atmosphere], columns: &[&'a str]) -> Vec<&'a str> {
+    let name = (airs.len() > 1).then_some("atmosphere");
+    name.into_iter().chain(columns.iter().copied()).collect()
+}
+
+fn levels(arguments: &AirArguments, airs: &[Atmosphere]) -> String {
     let columns = [
         "altitude_m",
         "temperature_k",
@@ -100,9 +193,13 @@ fn levels(arguments: &AirArguments, air: &Atmosphere) -> String {
         "refractivity",
         "cherenkov_angle_deg",
         "electron_threshold_mev",
+        "muon_threshold_gev",
+        "pion_threshold_gev",
+        "proton_threshold_gev",
     ];
-    let row = |&altitude: &f64| {
+    let row = |air: &Atmosphere, altitude: f64| {
         let refractivity = air.refractivity(altitude, arguments.wavelength[0]);
+        let thresholds = Thresholds::new(refractivity);
         vec![
             altitude,
             air.temperature_k(altitude),
@@ -111,82 +208,60 @@ fn levels(arguments: &AirArguments, air: &Atmosphere) -> String {
             air.depth_g_cm2(altitude),
             refractivity,
             units::degrees(largest_emission_angle_rad(refractivity)),
-            1e3 * threshold_energy_gev(refractivity, ELECTRON_MASS_GEV),
+            1e3 * thresholds.electron_gev,
+            thresholds.muon_gev,
+            thresholds.pion_gev,
+            thresholds.proton_gev,
         ]
     };
-    written(arguments.format, &columns, &arguments.altitude.iter().map(row).collect::<Vec<_>>())
+    let rows = with_names(airs, |air| arguments.altitude.iter().map(|h| row(air, *h)).collect());
+    written_cells(arguments.format, &heads(airs, &columns), &rows)
 }
 
 fn transmissions(
     arguments: &AirArguments,
-    air: &Atmosphere,
+    airs: &[Atmosphere],
     emission_m: f64,
     observer_m: f64,
 ) -> String {
     let extinction = Extinction {
+        rayleigh: arguments.rayleigh == Switch::On,
+        aerosol: arguments.aerosol == Switch::On,
+        ozone: arguments.ozone != OzoneChoice::Off,
         aerosol_depth_550nm: arguments.aerosol_depth,
         angstrom_exponent: arguments.angstrom,
         aerosol_scale_height_m: arguments.aerosol_height,
-        ..Extinction::default()
     };
-    let row = |&nm: &f64| {
+    let row = |air: &Atmosphere, nm: f64| {
         let zenith = arguments.zenith;
         let depths = extinction.optical_depths(air, emission_m, observer_m, zenith, nm);
         let parts = [depths.rayleigh, depths.aerosol, depths.ozone].map(|depth| (-depth).exp());
         vec![nm, parts[0], parts[1], parts[2], parts.iter().product()]
     };
     let columns = ["wavelength_nm", "rayleigh", "aerosol", "ozone", "total"];
-    written(arguments.format, &columns, &arguments.wavelength.iter().map(row).collect::<Vec<_>>())
+    let rows = with_names(airs, |air| arguments.wavelength.iter().map(|w| row(air, *w)).collect());
+    written_cells(arguments.format, &heads(airs, &columns), &rows)
 }
 
-/// Rows of numbers under their columns.
-pub(super) fn written(format: Format, columns: &[&str], rows: &[Vec<f64>]) -> String {
-    let mut out = String::new();
-    match format {
-        Format::Json => {
-            let object = |row: &Vec<f64>| {
-                let pairs = columns.iter().zip(row);
-                let map: Map<String, Value> =
-                    pairs.map(|(name, value)| ((*name).to_owned(), (*value).into())).collect();
-                Value::Object(map)
-            };
-            let _ = writeln!(out, "{:#}", Value::Array(rows.iter().map(object).collect()));
+fn draw(path: &Path, airs: &[Atmosphere], wavelength_nm: f64) -> Result<(), Failure> {
+    let standard = Atmosphere::us1976();
+    let count = (CHART_TOP_M / CHART_STEP_M) as usize;
+    let altitudes: Vec<f64> = (0..=count).map(|i| CHART_STEP_M * i as f64).collect();
+    let curve = |air: &Atmosphere| {
+        let by = |value: &dyn Fn(f64) -> f64| altitudes.iter().map(|h| value(*h)).collect();
+        let name = Path::new(air.name()).file_stem().map(|stem| stem.to_string_lossy());
+        let file = air.name().ends_with(".csv");
+        AirCurve {
+            name: name.filter(|_| file).map_or_else(|| air.name().into(), Into::into),
+            altitude_km: by(&|h| 1e-3 * h),
+            density_ratio: by(&|h| air.density_kg_m3(h) / standard.density_kg_m3(h)),
+            refractivity_difference: by(&|h| {
+                1e6 * (air.refractivity(h, wavelength_nm) - standard.refractivity(h, wavelength_nm))
+            }),
         }
-        Format::Csv => {
-            let _ = writeln!(out, "{}", columns.join(","));
-            for row in rows {
-                let cells: Vec<String> = row.iter().map(f64::to_string).collect();
-                let _ = writeln!(out, "{}", cells.join(","));
-            }
-        }
-        Format::Table => {
-            let line = |cells: Vec<String>| {
-                let padded: Vec<String> = cells
-                    .iter()
-                    .zip(columns)
-                    .map(|(cell, name)| format!("{cell:>width$}", width = name.len().max(10)))
-                    .collect();
-                padded.join("  ")
-            };
-            let _ = writeln!(out, "{}", line(columns.iter().map(|c| (*c).to_owned()).collect()));
-            for row in rows {
-                let _ = writeln!(out, "{}", line(row.iter().map(|value| short(*value)).collect()));
-            }
-        }
-    }
-    out
-}
-
-/// Six significant digits.
-fn short(value: f64) -> String {
-    let size = value.abs();
-    if value == 0.0 {
-        return "0".into();
-    }
-    if (1e-2..1e6).contains(&size) {
-        let digits = (5 - size.max(1e-9).log10().floor() as i32).clamp(0, 8) as usize;
-        format!("{value:.digits$}")
-    } else {
-        format!("{value:.5e}")
-    }
+    };
+    let curves: Vec<AirCurve> = airs.iter().map(curve).collect();
+    let svg = air_chart(&curves, "US 1976", wavelength_nm);
+    let name = path.file_name().map(|name| name.to_string_lossy().into_owned()).unwrap_or_default();
+    Ok(write_files(folder(path), &[(name, svg.into_bytes())])?)
 }

@@ -11,6 +11,7 @@ mod out;
 mod plan;
 mod pool;
 mod progress;
+mod rows;
 mod search;
 mod table;
 

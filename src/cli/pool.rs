@@ -4,7 +4,7 @@ use clap::{Args, ValueEnum};
 use nalgebra::Vector3;
 use rayon::prelude::*;
 
-use crate::atmosphere::{Atmosphere, Extinction};
+use crate::atmosphere::{Atmosphere, Extinction, TransmissionTable};
 use crate::light::collect::pool::{PoolDensity, PoolRequest, pool_density};
 use crate::light::{
     Detector, LightModel, LightSettings, ShowerLight, View, column::Transmission, parts,
@@ -14,7 +14,7 @@ use crate::shower::profile::{DevelopmentTable, EmitterTable};
 use crate::shower::{Direction, Primary, Species};
 use crate::units;
 
-use super::air::written;
+use super::rows::{Format, written};
 use super::{Failure, print};
 
 /// Slabs of the fast engine.
@@ -31,20 +31,9 @@ enum EngineChoice {
     Cascade,
 }
 
-/// How results are printed.
-#[derive(Clone, Copy, Debug, PartialEq, Eq, ValueEnum)]
-pub(super) enum Format {
-    /// Comma-separated values.
-    Csv,
-    /// An array of objects.
-    Json,
-    /// Aligned columns.
-    Table,
-}
-
 /// On or off.
 #[derive(Clone, Copy, Debug, PartialEq, Eq, ValueEnum)]
-enum Switch {
+pub(super) enum Switch {
     On,
     Off,
 }
@@ -115,9 +104,9 @@ pub(super) fn run(arguments: &PoolArguments) -> Result<(), Failure> {
     check(arguments)?;
     let air = Atmosphere::named(&arguments.atmosphere)
         .map_err(|error| Failure::Input(format!("--atmosphere: {error}")))?;
-    let extinction = Extinction::default();
+    let table = TransmissionTable::new(&Extinction::default(), &air, arguments.observer);
     let through = |emission: f64, zenith: f64, nm: f64| match arguments.extinction {
-        Switch::On => extinction.transmission(&air, emission, arguments.observer, zenith, nm),
+        Switch::On => table.transmission(emission, zenith, nm),
         Switch::Off => 1.0,
     };
     let rows = match arguments.engine {

@@ -1,6 +1,8 @@
 //! The Frank-Tamm law.
 
-use crate::consts::FINE_STRUCTURE;
+use crate::consts::{
+    CHARGED_PION_MASS_GEV, ELECTRON_MASS_GEV, FINE_STRUCTURE, MUON_MASS_GEV, PROTON_MASS_GEV,
+};
 
 /// sin^2 of the emission angle: 1 - 1/(n beta)^2, or zero below threshold.
 ///
@@ -25,6 +27,32 @@ pub fn largest_emission_angle_rad(refractivity: f64) -> f64 {
 pub fn threshold_energy_gev(refractivity: f64, mass_gev: f64) -> f64 {
     let n = 1.0 + refractivity;
     mass_gev * n / ((n - 1.0) * (n + 1.0)).sqrt()
+}
+
+/// Threshold total energies in air of one refractivity, GeV.
+#[derive(Clone, Copy, Debug, PartialEq)]
+pub struct Thresholds {
+    /// Of electrons and positrons.
+    pub electron_gev: f64,
+    /// Of muons.
+    pub muon_gev: f64,
+    /// Of charged pions.
+    pub pion_gev: f64,
+    /// Of protons.
+    pub proton_gev: f64,
+}
+
+impl Thresholds {
+    /// The thresholds where the air's n - 1 is `refractivity`.
+    pub fn new(refractivity: f64) -> Self {
+        let of = |mass_gev| threshold_energy_gev(refractivity, mass_gev);
+        Self {
+            electron_gev: of(ELECTRON_MASS_GEV),
+            muon_gev: of(MUON_MASS_GEV),
+            pion_gev: of(CHARGED_PION_MASS_GEV),
+            proton_gev: of(PROTON_MASS_GEV),
+        }
+    }
 }
 
 /// Photons per metre of track between two wavelengths, for sin^2(theta) constant over the band:

@@ -38,6 +38,48 @@ impl UniformTable {
     }
 }
 
+/// The exact inverse of a strictly falling [`UniformTable`]: a first guess from a table, then the
+/// straight line that holds the value.
+#[derive(Clone, Debug)]
+pub struct FallingInverse {
+    start: f64,
+    inverse_step: f64,
+    cells: Vec<u32>,
+}
+
+impl FallingInverse {
+    /// Prepares the inverse with `count` guesses, at least 2.
+    pub fn new(table: &UniformTable, count: usize) -> Self {
+        assert!(table.values.windows(2).all(|pair| pair[1] < pair[0]), "the table must fall");
+        let last = table.values.len() - 1;
+        let (high, low) = (table.values[0], table.values[last]);
+        let step = (high - low) / (count - 1) as f64;
+        let cell = |index: usize| {
+            let value = low + step * index as f64;
+            let above = table.values.partition_point(|found| *found >= value);
+            above.saturating_sub(1).min(last - 1) as u32
+        };
+        Self { start: low, inverse_step: 1.0 / step, cells: (0..count).map(cell).collect() }
+    }
+
+    /// The position at which `table`, the one it was made for, has `value`; its ends outside.
+    #[inline]
+    pub fn position(&self, table: &UniformTable, value: f64) -> f64 {
+        let values = &table.values;
+        let last = values.len() - 1;
+        let guess = ((value - self.start) * self.inverse_step).max(0.0) as usize;
+        let mut cell = self.cells[guess.min(self.cells.len() - 1)] as usize;
+        while cell > 0 && values[cell] < value {
+            cell -= 1;
+        }
+        while cell + 1 < last && values[cell + 1] > value {
+            cell += 1;
+        }
+        let share = (values[cell] - value) / (values[cell] - values[cell + 1]);
+        table.start + (cell as f64 + share.clamp(0.0, 1.0)) / table.inverse_step
+    }
+}
+
 /// Linear interpolation of `(x, y)` points sorted by x; zero outside, as for efficiency curves.
 pub fn linear_or_zero(points: &[(f64, f64)], position: f64) -> f64 {
     let upper = points.partition_point(|(x, _)| *x < position);

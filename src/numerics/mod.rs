@@ -4,5 +4,5 @@ pub mod interpolation;
 pub mod quadrature;
 pub mod stream;
 
-pub use interpolation::UniformTable;
+pub use interpolation::{FallingInverse, UniformTable};
 pub use stream::{Stage, Stream};

@@ -4,7 +4,7 @@ use core::f64::consts::PI;
 
 use nalgebra::Vector3;
 
-use crate::atmosphere::Extinction;
+use crate::atmosphere::{Extinction, TransmissionTable};
 use crate::light::{Detector, LightModel, LightSettings};
 use crate::numerics::{Stage, Stream};
 use crate::rates::{Spectrum, SpectrumError};
@@ -81,11 +81,11 @@ pub fn developments() -> DevelopmentTable {
 pub fn light_model(study: &Study) -> LightModel {
     let table = EmitterTable::shipped().expect("the table that ships is whole");
     let (air, altitude_m) = (&study.air.atmosphere, study.site.altitude_m);
-    let extinction = extinction(study);
+    let through = TransmissionTable::new(&extinction(study), air, altitude_m);
     let settings = LightSettings {
         atmosphere: air,
         transmission: &|emission_m, zenith_rad, wavelength_nm| {
-            extinction.transmission(air, emission_m, altitude_m, zenith_rad, wavelength_nm)
+            through.transmission(emission_m, zenith_rad, wavelength_nm)
         },
         observer_altitude_m: altitude_m,
         zenith_rad: radians(study.pointing.zenith_deg),

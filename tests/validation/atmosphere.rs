@@ -1,7 +1,19 @@
 //! The air against standards and published tables.
 
-use nightpool::atmosphere::refraction::refractivity;
-use nightpool::atmosphere::{Atmosphere, extinction::rayleigh_cross_section_cm2};
+use nightpool::atmosphere::refraction::{group_refractivity, refractivity, vapour_fraction};
+use nightpool::atmosphere::{Atmosphere, extinction::rayleigh_cross_section_cm2, ozone, standard};
+
+/// Rows of numbers of a table with comments and a header; a text column is read as NaN.
+fn rows(text: &str) -> Vec<Vec<f64>> {
+    let lines = text.lines().filter(|line| !line.starts_with('#')).skip(1);
+    lines.map(|line| line.split(',').map(|x| x.parse().unwrap_or(f64::NAN)).collect()).collect()
+}
+
+/// Fails with both numbers if they differ by more than `relative`.
+fn near(ours: f64, published: f64, relative: f64, what: &str) {
+    let off = ours / published - 1.0;
+    assert!(off.abs() < relative, "{what}: {ours}, published {published}, off by {off:e}");
+}
 
 /// U.S. Standard Atmosphere 1976: (altitude km, K, Pa, kg/m3, depth g/cm2), reference sheet section
 /// A.1, evaluated from the defining equations; the standard's printed layer bases are reproduced.
@@ -29,16 +41,50 @@ fn validate_air_us1976_tables() {
         (80.0, 198.639, 1.0525, 1.84580e-5, 0.0110),
     ];
     for (km, temperature, pressure, density, depth) in rows {
-        let near = |ours: f64, published: f64, relative: f64, what: &str| {
-            let off = ours / published - 1.0;
-            assert!(off.abs() < relative, "{km} km, {what}: {ours}, published {published}");
-        };
-        near(air.temperature_k(1e3 * km), temperature, 2e-4, "temperature");
-        near(air.pressure_pa(1e3 * km), pressure, 2e-4, "pressure");
-        near(air.density_kg_m3(1e3 * km), density, 2e-4, "density");
+        let what = |what: &str| format!("{km} km, {what}");
+        near(air.temperature_k(1e3 * km), temperature, 2e-4, &what("temperature"));
+        near(air.pressure_pa(1e3 * km), pressure, 2e-4, &what("pressure"));
+        near(air.density_kg_m3(1e3 * km), density, 2e-4, &what("density"));
         // Rounded to three or four digits in the table.
-        near(air.depth_g_cm2(1e3 * km), depth, if depth < 0.1 { 6e-3 } else { 5e-4 }, "depth");
+        let rounding = if depth < 0.1 { 6e-3 } else { 5e-4 };
+        near(air.depth_g_cm2(1e3 * km), depth, rounding, &what("depth"));
     }
+}
+
+/// U.S. Standard Atmosphere 1976 every 500 m to 80 km, as a general-purpose library computes it:
+/// within 0.02 %.
+#[test]
+fn validate_air_us1976_every_row() {
+    let air = Atmosphere::us1976();
+    let rows = rows(include_str!("../data/us1976_to_80_km.csv"));
+    assert_eq!(rows.len(), 161);
+    for row in rows {
+        let (altitude, what) = (1e3 * row[0], format!("{} km", row[0]));
+        near(air.temperature_k(altitude), row[1], 2e-4, &what);
+        near(air.pressure_pa(altitude), row[2], 2e-4, &what);
+        near(air.density_kg_m3(altitude), row[3], 2e-4, &what);
+    }
+}
+
+/// U.S. Standard Atmosphere 1976, table 1 above 86 km: temperature to its rounding, pressure and
+/// density within 0.1 % (0.04 % to 500 km).
+#[test]
+fn validate_air_us1976_above_86_km() {
+    let mut worst = [0.0_f64; 2];
+    for row in rows(include_str!("../data/us1976_above_86_km.csv")) {
+        let state = standard::state(1e3 * row[0] + 1e-6);
+        let what = format!("{} km", row[0]);
+        assert!((state.temperature_k - row[1]).abs() < 0.006, "{what}: {}", state.temperature_k);
+        for (k, (ours, published)) in
+            [(state.pressure_pa, row[2]), (state.density_kg_m3, row[3])].into_iter().enumerate()
+        {
+            println!("{what}: {ours:.5e} {published:e} {:+.5}", ours / published - 1.0);
+            worst[k] = worst[k].max((ours / published - 1.0).abs());
+        }
+    }
+    assert!(worst[0] < 1e-3 && worst[1] < 1e-3, "{worst:?}");
+    let air = Atmosphere::us1976();
+    assert!((air.density_kg_m3(100e3) / 5.604e-7 - 1.0).abs() < 1e-3);
 }
 
 /// Depth is the integral of density; pressure over standard gravity is 0.2 % less (reference sheet,
@@ -71,12 +117,36 @@ fn validate_refractivity_ciddor1996() {
     }
     let moist = [
         (19.526, 102_094.8, 1_065.0, 510.0, 27_392.95),
+        (19.517, 102_096.8, 1_065.0, 510.0, 27_394.34),
         (19.173, 102_993.0, 641.0, 450.0, 27_682.47),
+        (19.188, 102_918.8, 706.0, 450.0, 27_658.70),
         (19.532, 103_603.2, 986.0, 600.0, 27_802.03),
+        (19.534, 103_599.2, 951.0, 610.0, 27_802.19),
     ];
     for (celsius, pressure, vapour, co2, value) in moist {
         let ours = 1e8 * refractivity(632.991, celsius + 273.15, pressure, vapour, co2);
         assert!((ours - value).abs() < 2.0, "{celsius} C: {ours}, published {value}");
+    }
+}
+
+/// Ciddor's index as a general-purpose library computes it, dry and moist, 300 to 900 nm, -40 to
+/// 30 C: 1e-9 dry, and 2e-10 of the moist convention with the enhancement factor.
+#[test]
+fn validate_refractivity_reference_library() {
+    let rows = rows(include_str!("../data/ciddor_reference_library.csv"));
+    assert!(rows.len() > 100);
+    for row in rows {
+        let [nm, celsius, pressure, humidity, co2, value] = row[..] else { unreachable!() };
+        let kelvin = celsius + 273.15;
+        let vapour = pressure * vapour_fraction(kelvin, pressure, 1e-2 * humidity);
+        let ours = 1e8 * refractivity(nm, kelvin, pressure, vapour, co2);
+        assert!((ours - value).abs() < 0.1, "{row:?}: {ours}");
+    }
+    // The library's own documentation, 633 nm, 20 C, 101,325 Pa, 450 ppm, humidity 20 and 80 %.
+    for (humidity, value) in [(0.2, 27_162.853_405), (0.8, 27_111.834_726)] {
+        let vapour = 101_325.0 * vapour_fraction(293.15, 101_325.0, humidity);
+        let ours = 1e8 * refractivity(633.0, 293.15, 101_325.0, vapour, 450.0);
+        assert!((ours - value).abs() < 0.1, "{humidity}: {ours}");
     }
 }
 
@@ -95,15 +165,41 @@ fn validate_dispersion_ciddor1996() {
     }
 }
 
-/// The group index is the phase index less wavelength times its slope.
+/// The group index is the phase index less wavelength times its slope, in dry and in moist air.
 #[test]
 fn validate_group_index_is_the_derivative() {
-    let air = Atmosphere::us1976();
-    for nm in [280.0, 350.0, 500.0, 800.0] {
-        let slope = (air.refractivity(2e3, nm + 0.1) - air.refractivity(2e3, nm - 0.1)) / 0.2;
-        let expected = air.refractivity(2e3, nm) - nm * slope;
-        let ours = air.group_refractivity(2e3, nm);
+    let moist = Atmosphere::named("tropical").unwrap();
+    let dry = Atmosphere::us1976();
+    for nm in [250.0, 280.0, 350.0, 500.0, 800.0, 900.0] {
+        for air in [&dry, &moist] {
+            let slope = (air.refractivity(2e3, nm + 0.1) - air.refractivity(2e3, nm - 0.1)) / 0.2;
+            let expected = air.refractivity(2e3, nm) - nm * slope;
+            let ours = air.group_refractivity(2e3, nm);
+            assert!((ours / expected - 1.0).abs() < 1e-6, "{nm} nm: {ours} {expected}");
+        }
+        let of = |nm: f64| refractivity(nm, 300.0, 1e5, 3_000.0, 420.0);
+        let expected = of(nm) - nm * (of(nm + 0.1) - of(nm - 0.1)) / 0.2;
+        let ours = group_refractivity(nm, 300.0, 1e5, 3_000.0, 420.0);
         assert!((ours / expected - 1.0).abs() < 1e-6, "{nm} nm: {ours} {expected}");
+    }
+}
+
+/// An atmosphere's index is Ciddor's at its own temperature, pressure and humidity, at every
+/// wavelength: table rows of the tropical model (299.7 K, 101,300 Pa, 25,900 ppmv).
+#[test]
+fn validate_refractivity_of_moist_profile_ciddor1996() {
+    let air = Atmosphere::named("tropical").unwrap();
+    for (km, kelvin, pascal, ppmv) in
+        [(0.0, 299.7, 101_300.0, 25_900.0), (3.0, 283.7, 71_500.0, 8_600.0)]
+    {
+        for nm in [250.0, 300.0, 400.0, 600.0, 900.0] {
+            let ours = air.refractivity(1e3 * km, nm);
+            let expected = refractivity(nm, kelvin, pascal, 1e-6 * ppmv * pascal, 450.0);
+            assert!((ours - expected).abs() < 1e-10, "{km} km, {nm} nm: {ours} {expected}");
+        }
+        let other = air.clone().with_co2_ppm(420.0).refractivity(1e3 * km, 400.0);
+        let expected = refractivity(400.0, kelvin, pascal, 1e-6 * ppmv * pascal, 420.0);
+        assert!((other - expected).abs() < 1e-10, "{km} km: {other} {expected}");
     }
 }
 
@@ -149,4 +245,142 @@ fn validate_reference_atmospheres_anderson1986() {
         let depth = air.depth_g_cm2(2_200.0);
         assert!((depth / (1.002 * above) - 1.0).abs() < 4e-3, "{name}: {depth}, {above}");
     }
+}
+
+/// Anderson et al. 1986: density at every table node to 100 km within the rounding of the printed
+/// pressure, temperature and number density (two or three digits above 70 km); between nodes, smooth
+/// and hydrostatic.
+#[test]
+fn validate_reference_atmospheres_at_every_node_anderson1986() {
+    let text = include_str!("../data/afgl1986_number_density.csv");
+    let lines = text.lines().filter(|line| !line.starts_with('#')).skip(1);
+    let mut read = 0;
+    let mut loaded: Option<Atmosphere> = None;
+    for line in lines {
+        let cells: Vec<&str> = line.split(',').collect();
+        let (km, printed): (f64, f64) = (cells[1].parse().unwrap(), cells[2].parse().unwrap());
+        if loaded.as_ref().is_none_or(|air| air.name() != cells[0]) {
+            loaded = Some(Atmosphere::named(cells[0]).unwrap());
+        }
+        let air = loaded.as_ref().unwrap();
+        if (cells[0], km) == ("subarctic_summer", 1.0) {
+            // Printed 4 % too high.
+            near(air.molecules_cm3(1e3 * km), printed / 1.04, 2e-3, line);
+            continue;
+        }
+        let rounding = if km > 80.0 { 2e-2 } else { 7e-3 };
+        near(air.molecules_cm3(1e3 * km), printed, rounding, line);
+        read += 1;
+    }
+    assert_eq!(read, 6 * 46 - 1);
+    for name in Atmosphere::names() {
+        let air = Atmosphere::named(name).unwrap();
+        for index in 0..780 {
+            let altitude = 100.0 * f64::from(index) + 50.0;
+            let fall =
+                (air.pressure_pa(altitude - 50.0) - air.pressure_pa(altitude + 50.0)) / 100.0;
+            let weight = air.density_kg_m3(altitude) * standard::gravity_m_s2(altitude);
+            // Pressures are printed to three digits (0.45 % at 111 hPa) and fall by 15 % between rows
+            // a kilometre apart: 4 % in the fall; above 70 km two digits, half between rows.
+            let mut rounding = if altitude > 50e3 { 0.08 } else { 0.045 };
+            if name == "us_standard_afgl" && (30e3..40e3).contains(&altitude) {
+                // Table 1f prints 8.01 and 4.15 hPa at 32.5 and 37.5 km, 3 % below and above the
+                // standard that it reproduces (8.258 and 4.041); kept as printed.
+                rounding = 0.09;
+            }
+            near(fall, weight, rounding, &format!("{name}, {altitude} m"));
+        }
+    }
+}
+
+/// Ozone columns of the reference atmospheres (reference sheet, section A.2: Dobson units, integrated
+/// from the printed number densities).
+#[test]
+fn validate_ozone_columns_anderson1986() {
+    for (name, dobson) in [
+        ("us1976", 345.7),
+        ("us_standard_afgl", 345.7),
+        ("tropical", 283.7),
+        ("midlatitude_summer", 335.7),
+        ("midlatitude_winter", 379.7),
+        ("subarctic_summer", 349.1),
+        ("subarctic_winter", 377.0),
+    ] {
+        let air = Atmosphere::named(name).unwrap();
+        let column: f64 =
+            (0..1_200).map(|i| air.ozone_cm3(100.0 * f64::from(i) + 50.0) * 1e4).sum();
+        // Straight lines of the mixing ratio here, of the density there, over 2.5 km.
+        near(column / 2.6868e16, dobson, 0.01, name);
+        let standard = air.with_standard_ozone();
+        let column: f64 =
+            (0..1_200).map(|i| standard.ozone_cm3(100.0 * f64::from(i) + 50.0) * 1e4).sum();
+        near(column / 2.6868e16, 345.7, 0.01, name);
+    }
+}
+
+/// Ozone absorption of Bird & Riordan 1986 (J. Clim. Appl. Meteorol. 25, 87, table 1), per atm cm,
+/// within 10 %: our table is from other sources, from memory, +-5 %.
+#[test]
+fn validate_ozone_absorption_bird1986() {
+    for (nm, per_atm_cm) in [(300.0, 10.0), (305.0, 4.8), (310.0, 2.7), (315.0, 1.35)] {
+        near(ozone::cross_section_cm2(nm) * 2.6868e19, per_atm_cm, 0.12, &format!("{nm} nm"));
+    }
+}
+
+/// Published outputs of NRLMSISE-00 (test cases of its distribution, from memory): day 172, 29,000 s,
+/// 60 N 70 W, local time 16 h, F10.7 150, Ap 4; altitude km, K, g/cm3.
+#[test]
+fn validate_seasonal_model_picone2002_test_cases() {
+    let model = nrlmsise00::Model::new();
+    for (km, kelvin, density) in [
+        (0.0, 281.464_8, 1.261_066e-3),
+        (10.0, 227.418_0, 4.059_139e-4),
+        (30.0, 237.438_9, 1.950_822e-5),
+        (50.0, 279.555_1, 1.294_709e-6),
+    ] {
+        let air = model.gtd7::<f64>(&nrlmsise00::Input {
+            day_of_year: 172,
+            seconds_of_day: 29_000.0,
+            altitude_km: km,
+            latitude_deg: 60.0,
+            longitude_deg: -70.0,
+            local_solar_time_h: 16.0,
+            f107_average: 150.0,
+            f107: 150.0,
+            magnetic: nrlmsise00::MagneticActivity::Daily { ap: 4.0 },
+        });
+        near(air.temperature, kelvin, 1e-5, &format!("{km} km"));
+        near(air.total_mass, 1e3 * density, 2e-4, &format!("{km} km"));
+    }
+}
+
+/// The seasonal atmosphere against another implementation of the same model.
+#[test]
+fn validate_seasonal_air_reference_library() {
+    let rows = rows(include_str!("../data/nrlmsise00_reference_library.csv"));
+    assert_eq!(rows.len(), 60);
+    for row in rows {
+        let name = format!("model:{},{},{}", row[0], row[1], row[2]);
+        let air = Atmosphere::named(&name).unwrap();
+        let what = format!("{name}, {} km", row[3]);
+        near(air.temperature_k(1e3 * row[3]), row[4], 1e-5, &what);
+        // Ours is an ideal gas of 28.9644 g/mol; the model's gases weigh a little less from 70 km on.
+        let mixed = if row[3] > 70.0 { 3e-3 } else { 1e-3 };
+        near(air.density_kg_m3(1e3 * row[3]), row[5], mixed, &what);
+    }
+}
+
+/// Thresholds in the standard air at sea level: electron 21 MeV, muon 4.4 GeV, proton 39 GeV
+/// (handbook values, from memory, 2 %), all in the ratio of the masses.
+#[test]
+fn validate_thresholds_at_sea_level() {
+    let air = Atmosphere::us1976();
+    let found = nightpool::light::cherenkov::Thresholds::new(air.refractivity(0.0, 400.0));
+    near(found.electron_gev, 21.5e-3, 0.02, "electron");
+    near(found.muon_gev, 4.44, 0.02, "muon");
+    near(found.pion_gev, 5.87, 0.02, "pion");
+    near(found.proton_gev, 39.5, 0.02, "proton");
+    // gamma = 1 / (1 - 1/n^2)^1/2.
+    let n = 1.0 + air.refractivity(0.0, 400.0);
+    near(found.proton_gev, 0.938_272_088 / (1.0 - 1.0 / (n * n)).sqrt(), 1e-9, "proton");
 }

@@ -175,6 +175,13 @@ impl Frame {
 
     /// Grid and ticks left of the data.
     pub fn draw_left(&self, canvas: &Canvas<'_>, y_name: &str) {
+        self.draw_left_unnamed(canvas);
+        let middle = 0.5 * (self.top + self.bottom);
+        canvas.text_upward(y_name, (self.left - 222.0, middle), LABEL_FONT);
+    }
+
+    /// Grid and ticks left of the data, without the axis's name.
+    pub fn draw_left_unnamed(&self, canvas: &Canvas<'_>) {
         for (place, label) in self.y.ticks() {
             let y = self.up(place);
             let (grid, tick) = if label.is_empty() { (false, 14.0) } else { (true, 26.0) };
@@ -184,8 +191,6 @@ impl Frame {
             canvas.line(&[(self.left - tick, y), (self.left, y)], INK, 4);
             canvas.text(&label, (self.left - 38.0, y), TICK_FONT, Side::Right);
         }
-        let middle = 0.5 * (self.top + self.bottom);
-        canvas.text_upward(y_name, (self.left - 222.0, middle), LABEL_FONT);
     }
 
     /// The frame's outline.

@@ -4,6 +4,7 @@
 //! plotters' SVG backend rounds to whole pixels; everything is drawn at four times its size and
 //! scaled by the view box.
 
+mod air;
 mod axes;
 mod canvas;
 mod curves;
@@ -12,6 +13,7 @@ mod order;
 mod pool;
 mod style;
 
+pub use air::{AirCurve, air_chart};
 pub use curves::{differential_rate_chart, effective_area_chart};
 pub use map::layout_map_chart;
 pub use order::ranking_chart;
