@@ -125,7 +125,7 @@ impl Columns {
         let cells: Vec<&str> = text.split(',').map(str::trim).collect();
         let number = |at: usize| -> Result<f64, String> {
             let cell = cells.get(at).copied().unwrap_or("");
-            let shown: String = cell.chars().take(24).collect();
+            let shown: String = cell.chars().take(24).flat_map(char::escape_debug).collect();
             let parsed = cell.parse::<f64>().ok().filter(|value| value.is_finite());
             parsed.ok_or_else(|| format!("`{shown}` in column {} is no number", at + 1))
         };
@@ -147,7 +147,11 @@ impl Columns {
         let (cold, hot) = if altitude_m < 60_000.0 { (150.0, 340.0) } else { (100.0, 1_200.0) };
         let temperature_k = within("temperature in K", temperature, cold, hot, hint)?;
         let fraction = |found: (f64, Unit)| fraction(found, temperature_k, pressure_pa);
-        let vapour = wanted(self.vapour).transpose()?.map(fraction);
+        let vapour = wanted(self.vapour).transpose()?;
+        if let Some((percent, Unit::RelativeHumidity(_))) = vapour {
+            within("relative humidity in %", percent, 0.0, 120.0, "")?;
+        }
+        let vapour = vapour.map(fraction);
         let ozone = wanted(self.ozone).transpose()?.map(fraction);
         let vapour =
             vapour.map(|x| within("molar fraction of water", x, 0.0, 0.1, "")).transpose()?;

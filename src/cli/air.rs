@@ -18,7 +18,7 @@ use super::{Failure, print};
 /// Highest altitude of the chart, m: Cherenkov light comes from below.
 const CHART_TOP_M: f64 = 30_000.0;
 const CHART_STEP_M: f64 = 250.0;
-/// Beyond this zenith angle results are approximate.
+/// Beyond this zenith angle straight rays are approximate.
 const STATED_TO_DEG: f64 = 70.0;
 
 /// Arguments of `air`.
@@ -93,8 +93,14 @@ pub(super) fn run(arguments: &AirArguments) -> Result<(), Failure> {
     };
     if let Some(path) = &arguments.plot {
         draw(path, &airs, arguments.wavelength[0])?;
+        say(&format!("drew {}", path.display()));
     }
     print(&text)
+}
+
+/// Writes a line to standard error; nobody is left to tell if that is closed.
+fn say(line: &str) {
+    let _ = writeln!(std::io::stderr(), "{line}");
 }
 
 fn atmospheres(arguments: &AirArguments) -> Result<Vec<Atmosphere>, Failure> {
@@ -127,7 +133,9 @@ fn check(arguments: &AirArguments) -> Result<(), Failure> {
     for wavelength in &arguments.wavelength {
         within("a wavelength in nm", *wavelength, 250.0, 900.0)?;
     }
-    within("--zenith in deg", units::degrees(arguments.zenith), 0.0, 80.0 + 1e-9)?;
+    // Rounded: 80 degrees in radians and back is a little more.
+    let zenith_deg = (1e6 * units::degrees(arguments.zenith)).round() / 1e6;
+    within("--zenith in deg", zenith_deg, 0.0, 80.0)?;
     within("--aerosol-depth", arguments.aerosol_depth, 0.0, 5.0)?;
     within("--angstrom", arguments.angstrom, -1.0, 4.0)?;
     within("--aerosol-height in m", arguments.aerosol_height, 10.0, 20_000.0)?;
@@ -138,12 +146,11 @@ fn check(arguments: &AirArguments) -> Result<(), Failure> {
         let message = format!("--emission {emission} m is not above --observer {observer} m");
         return Err(Failure::Input(message));
     }
-    if units::degrees(arguments.zenith) > STATED_TO_DEG {
-        let _ = writeln!(
-            std::io::stderr(),
-            "warning: the air is integrated exactly to 80 deg, but beyond {STATED_TO_DEG} deg light \
-             bends by a tenth of a pixel and more, and aerosol near the ground decides"
-        );
+    if zenith_deg > STATED_TO_DEG {
+        say(&format!(
+            "warning: rays are straight; beyond {STATED_TO_DEG} deg light bends by more than a tenth \
+             of a pixel (0.034 deg at 80 deg)"
+        ));
     }
     match &arguments.plot {
         Some(path) => check_plot(path),

@@ -458,3 +458,54 @@ fn verify_wrong_seasonal_models_are_refused() {
     }
     assert!(Atmosphere::named("mars").unwrap_err().to_string().contains("tropical"));
 }
+
+/// The command with several atmospheres, switches and a chart: the rows carry names, every part of the
+/// extinction is printed and can be switched off, the chart is written whole and names every curve.
+#[test]
+fn verify_air_command_compares_atmospheres() {
+    let folder = std::path::Path::new(env!("CARGO_TARGET_TMPDIR")).join("air-command");
+    let _ = std::fs::remove_dir_all(&folder);
+    std::fs::create_dir_all(&folder).unwrap();
+    let run = |arguments: &[&str]| {
+        let mut command = std::process::Command::new(env!("CARGO_BIN_EXE_nightpool"));
+        let out = command.current_dir(&folder).arg("air").args(arguments).output().unwrap();
+        let text = |bytes: Vec<u8>| String::from_utf8(bytes).unwrap();
+        (out.status.code(), text(out.stdout), text(out.stderr))
+    };
+    let names = ["tropical", "model:-23.3,16.5,7", "us1976"];
+    let mut arguments = names.to_vec();
+    arguments.extend(["--altitude", "2200m,10km", "--format", "csv", "--plot", "air.svg"]);
+    let (code, out, err) = run(&arguments);
+    assert_eq!((code, err.as_str()), (Some(0), "drew air.svg\n"));
+    let lines: Vec<&str> = out.lines().collect();
+    assert!(lines.len() == 7 && lines[0].starts_with("atmosphere,altitude_m,"), "{out}");
+    assert!(lines[3].starts_with("\"model:-23.3,16.5,7\",2200,"), "{out}");
+    let svg = std::fs::read_to_string(folder.join("air.svg")).unwrap();
+    assert!(svg.starts_with("<svg") && svg.trim_end().ends_with("</svg>"));
+    for part in names.into_iter().chain(["Density / density of US 1976", "400 nm"]) {
+        assert!(svg.contains(part), "{part}");
+    }
+    let path = ["us1976", "--emission", "10km", "--observer", "2km", "--format", "csv"];
+    let with = |more: &[&str]| {
+        let (code, out, err) = run(&[&path, more].concat());
+        assert_eq!(code, Some(0), "{err}");
+        out.lines().nth(1).unwrap().to_owned()
+    };
+    let nm = ["--wavelength", "305nm"];
+    let all: Vec<f64> = with(&nm).split(',').map(|cell| cell.parse().unwrap()).collect();
+    assert!((all[1] * all[2] * all[3] / all[4] - 1.0).abs() < 1e-12);
+    let none = ["--rayleigh", "off", "--aerosol", "off", "--ozone", "off"];
+    assert_eq!(with(&[&nm[..], &none].concat()), "305,1,1,1,1");
+    assert_eq!(with(&[&nm[..], &none[..4]].concat()), format!("305,1,1,{0},{0}", all[3]));
+    for (wrong, expected) in [
+        (&["us1976", "--zenith", "80.1deg"][..], "allowed: 0 to 80"),
+        (&["us1976", "--emission", "1km", "--observer", "2km"], "is not above"),
+        (&["us1976", "--plot", "."], "name a file"),
+        (&["us1976", "nosuch.csv"], "nosuch.csv: "),
+        (&["us1976", "--wavelength", "200nm"], "allowed: 250 to 900"),
+    ] {
+        let (code, out, err) = run(wrong);
+        assert!(code == Some(2) && out.is_empty() && err.contains(expected), "{wrong:?}: {err}");
+    }
+    assert!(run(&["us1976", "--zenith", "75deg"]).2.starts_with("warning: "));
+}

@@ -268,11 +268,10 @@ fn verify_air_prints_its_columns_and_refuses_what_it_cannot_read() {
     let out = run(&["air", "us1976", "--altitude", "0m,11km", "--format", "csv"]);
     let text = String::from_utf8(out.stdout).unwrap();
     let lines: Vec<&str> = text.lines().collect();
-    assert_eq!(
-        lines[0],
-        "altitude_m,temperature_k,pressure_pa,density_kg_m3,depth_g_cm2,refractivity,\
-         cherenkov_angle_deg,electron_threshold_mev"
-    );
+    let columns = "altitude_m,temperature_k,pressure_pa,density_kg_m3,depth_g_cm2,refractivity,\
+                   cherenkov_angle_deg,electron_threshold_mev,muon_threshold_gev,\
+                   pion_threshold_gev,proton_threshold_gev";
+    assert_eq!(lines[0], columns);
     assert!(lines.len() == 3 && lines[1].starts_with("0,288.15,"), "{text}");
     for wrong in [&["air", "mars"][..], &["air", "us1976", "--altitude", "3"]] {
         let out = run(wrong);

@@ -28,8 +28,8 @@ pub fn air_chart(curves: &[AirCurve], standard: &str, wavelength_nm: f64) -> Str
     let difference =
         Scale::linear(values(|curve| &curve.refractivity_difference).chain([-1.0, 1.0]));
     let (top, bottom) = (60.0, 1_240.0);
-    let left = Frame { left: 230.0, right: 1_030.0, top, bottom, x: ratio, y };
-    let right = Frame { left: 1_170.0, right: 1_970.0, top, bottom, x: difference, y };
+    let left = Frame { left: 290.0, right: 1_060.0, top, bottom, x: ratio, y };
+    let right = Frame { left: 1_200.0, right: 1_970.0, top, bottom, x: difference, y };
     svg(1_470, "Atmospheres beside the standard one", |canvas| {
         left.draw_left(canvas, "Altitude above the sea (km)");
         left.draw_below(canvas, &format!("Density / density of {standard}"));
