@@ -42,21 +42,29 @@ pub struct Tariff {
     pub kinds: Vec<KindPrice>,
     /// Cable trench, per metre.
     pub trench_per_m: f64,
+    /// Telescopes that stand already (position in m, kind): free, and joined to the trench.
+    pub built: Vec<([f64; 3], usize)>,
     /// Where the trench ends, east, north, up, m; none leaves the trench among telescopes only.
     pub control_house_m: Option<[f64; 3]>,
 }
 
 impl Tariff {
-    /// Cost of telescopes (position in m, kind): telescopes, pads and the shortest trench.
+    /// Cost of telescopes (position in m, kind) that do not stand already: telescopes, pads and the
+    /// shortest trench.
     pub fn cost(&self, placed: &[([f64; 3], usize)]) -> f64 {
         let of =
             |(_, kind): &([f64; 3], usize)| self.kinds[*kind].telescope + self.kinds[*kind].pad;
-        let telescopes: f64 = placed.iter().map(of).sum();
+        let new = || placed.iter().filter(|telescope| !self.built.contains(telescope));
+        let telescopes: f64 = new().map(of).sum();
         if self.trench_per_m == 0.0 {
             return telescopes;
         }
-        let places = placed.iter().map(|(position, _)| *position).chain(self.control_house_m);
-        telescopes + self.trench_per_m * trench_m(&places.collect::<Vec<_>>())
+        // What stands is joined already: new trench is what the whole tree needs beyond that.
+        let old = self.built.iter().map(|(position, _)| *position).chain(self.control_house_m);
+        let old: Vec<[f64; 3]> = old.collect();
+        let mut all = old.clone();
+        all.extend(new().map(|(position, _)| *position));
+        telescopes + self.trench_per_m * (trench_m(&all) - trench_m(&old)).max(0.0)
     }
 }
 

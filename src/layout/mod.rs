@@ -5,6 +5,7 @@
 
 pub mod axes;
 pub mod candidate;
+pub mod coincidence;
 pub mod comparison;
 pub mod condition;
 pub mod constraint;

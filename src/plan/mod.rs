@@ -1,10 +1,13 @@
 //! From a study to its result: simulate once, score every layout on the same events.
 
+mod finalists;
 mod models;
 mod pool;
+mod robust;
 mod rows;
 mod search;
 mod setup;
+mod sources;
 mod tables;
 
 pub use search::{Best, SearchError, Wanted, best_files, search_ground};
@@ -18,7 +21,7 @@ use crate::layout::{Comparison, Resampling, at_least};
 use crate::light::LightModel;
 use crate::rates::{self, Estimate, Spectrum, SpectrumError};
 use crate::report::PlanResult;
-use crate::response::{Column, Sample, Scene, TableError};
+use crate::response::{Column, Sample, Scene, TableError, Throw};
 use crate::study::Study;
 
 /// A study that cannot be planned.
@@ -107,12 +110,19 @@ pub fn plan(
     let pool = pool::rows(study, &light);
     progress.advance(1);
     let scored: Vec<Scored> =
-        (0..study.layouts.len()).map(|layout| planned.score(layout, 1.0)).collect();
+        (0..study.layouts.len()).map(|layout| planned.score(layout)).collect();
     if scored.iter().all(|layout| layout.gamma.value <= 0.0) {
         return Err(PlanError::Empty);
     }
     let ranked = planned.compared(&scored).order();
-    Ok(rows::result(&planned, &light, &scored, &ranked, pool))
+    let order: Vec<usize> = ranked.iter().map(|row| row.layout).collect();
+    let (orders, order_changes) = robust::orders(&planned, &order, tables, progress)?;
+    let mut result = rows::result(&planned, &light, &scored, &ranked, pool);
+    result.sources = sources::rows(&planned, &scored, &setup::sources(study)?);
+    result.finalists = finalists::rows(&planned, &scored, &order);
+    result.directions = finalists::directions(&planned, &scored, &order);
+    (result.orders, result.order_changes) = (orders, order_changes);
+    Ok(result)
 }
 
 fn simulate<'a>(
@@ -125,20 +135,6 @@ fn simulate<'a>(
     let sky_per_ns: Vec<f64> =
         study.kinds.iter().map(|kind| kind.sky_photoelectrons_per_ns(&study.night_sky)).collect();
     let (columns, members) = columns(study);
-    let (developments, field_ut) = (setup::developments(), setup::field_ut(study));
-    let scene = Scene {
-        seed: study.seed,
-        kinds: &study.kinds,
-        sky_per_ns: sky_per_ns.clone(),
-        light,
-        pointing: setup::pointing(study),
-        field_ut,
-        columns: columns.clone(),
-        light_scale: 1.0,
-        parts: &|primary, light, stream| {
-            crate::light::parts(primary, field_ut, light, &developments, stream)
-        },
-    };
     let gamma = [setup::gamma_throw(study, &columns)].into_iter();
     let backgrounds = study.backgrounds.iter();
     let backgrounds =
@@ -146,7 +142,8 @@ fn simulate<'a>(
     let throws: Vec<_> = gamma.chain(backgrounds).collect();
     let words = throws.iter().map(|(throw, repetitions)| throw.word_count() * repetitions);
     progress.stage("showers", words.sum::<usize>() as u64);
-    let samples = tables::samples(study, &scene, &throws, tables, &|| progress.advance(1))?;
+    let under = (light, sky_per_ns.clone());
+    let samples = samples(study, under, &columns, &throws, tables, progress)?;
     let spectra = core::iter::once(gamma_spectrum).chain(background_spectra);
     let mut weighted =
         samples.into_iter().zip(spectra).map(|(sample, spectrum)| Weighted { sample, spectrum });
@@ -154,6 +151,32 @@ fn simulate<'a>(
     let backgrounds = weighted.collect();
     let thresholds_pe = setup::thresholds_pe(study, &sky_per_ns);
     Ok(Planned { study, thresholds_pe, sky_per_ns, columns, members, gamma, backgrounds })
+}
+
+/// What columns see of some throws under some air and sky; from a stored table as far as it goes.
+fn samples(
+    study: &Study,
+    (light, sky_per_ns): (&LightModel, Vec<f64>),
+    columns: &[Column],
+    throws: &[(Throw, usize)],
+    tables: Option<&Tables>,
+    progress: &dyn Progress,
+) -> Result<Vec<Sample>, TableError> {
+    let (developments, field_ut) = (setup::developments(), setup::field_ut(study));
+    let scene = Scene {
+        seed: study.seed,
+        kinds: &study.kinds,
+        sky_per_ns,
+        light,
+        pointing: setup::pointing(study),
+        field_ut,
+        columns: columns.to_vec(),
+        light_scale: 1.0,
+        parts: &|primary, light, stream| {
+            crate::light::parts(primary, field_ut, light, &developments, stream)
+        },
+    };
+    tables::samples(study, &scene, throws, tables, &|| progress.advance(1))
 }
 
 /// The union of all telescopes of all layouts, and which of them each layout has.
@@ -178,19 +201,21 @@ fn columns(study: &Study) -> (Vec<Column>, Vec<Vec<usize>>) {
 }
 
 impl Planned<'_> {
-    /// Votes and rates of one layout with all light scaled by a factor, which is the same as all
-    /// thresholds divided by it.
-    fn score(&self, layout: usize, light_scale: f64) -> Scored {
+    /// Events of a sample that a layout keeps with some pixel thresholds, by kind. Light scaled by
+    /// a factor is thresholds divided by it.
+    fn vote(&self, sample: &Sample, layout: usize, thresholds_pe: &[f64]) -> Vec<u64> {
+        let planes: Vec<Vec<u64>> = self.members[layout]
+            .iter()
+            .map(|&column| sample.plane(column, thresholds_pe[self.columns[column].kind]))
+            .collect();
+        let slices: Vec<&[u64]> = planes.iter().map(Vec::as_slice).collect();
+        at_least(&slices, self.study.layouts[layout].condition)
+    }
+
+    /// Votes and rates of one layout.
+    fn score(&self, layout: usize) -> Scored {
         let vote = |weighted: &Weighted| {
-            let planes: Vec<Vec<u64>> = self.members[layout]
-                .iter()
-                .map(|&column| {
-                    let threshold = self.thresholds_pe[self.columns[column].kind] / light_scale;
-                    weighted.sample.plane(column, threshold)
-                })
-                .collect();
-            let slices: Vec<&[u64]> = planes.iter().map(Vec::as_slice).collect();
-            let plane = at_least(&slices, self.study.layouts[layout].condition);
+            let plane = self.vote(&weighted.sample, layout, &self.thresholds_pe);
             let words = rates::word_rates(&weighted.sample.words, &plane, &weighted.spectrum);
             let rate = rates::rate_hz(&weighted.sample.words, &words);
             (plane, words, rate)
@@ -237,7 +262,8 @@ impl Planned<'_> {
     }
 
     fn cost(&self, layout: usize) -> f64 {
-        let telescopes = &self.study.layouts[layout].telescopes;
-        telescopes.iter().map(|placed| self.study.kinds[placed.kind].cost).sum()
+        let telescopes = self.study.layouts[layout].telescopes.iter();
+        let placed: Vec<_> = telescopes.map(|placed| (placed.enu_m, placed.kind)).collect();
+        self.study.tariff.cost(&placed)
     }
 }

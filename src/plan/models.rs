@@ -77,8 +77,8 @@ pub fn approximations(study: &Study) -> Vec<Approximation> {
             "Vertical muon spectra from 10 GeV to 1 TeV and the intensity above 1 GeV/c agree with published ones within 13 %; baryon pairs take 3 to 5 % of the energy (estimate).",
         ),
         (
-            "Bits ignore the array's coincidence window.",
-            "The vote is an upper bound; light of one shower reaches telescopes within 200 m inside 10 ns of a plane front, well inside usual windows.",
+            "The ranking's votes ignore the array's coincidence window and accidental triggers.",
+            "Measured on the leading layouts: see the section event by event.",
         ),
         (
             "Noise is drawn in pixels with light and their neighbours.",

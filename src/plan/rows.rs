@@ -1,7 +1,6 @@
 //! The plain result of a plan, row by row.
 
 use crate::layout::Compared;
-use crate::layout::comparison::robustness;
 use crate::light::LightModel;
 use crate::rates::{EnergyBin, differential_rates, edge_fraction, effective_areas, threshold_gev};
 use crate::report::{
@@ -51,6 +50,7 @@ pub fn result(
         counters: counters(planned),
         warnings: warnings(planned, scored, ranked),
         approximations: models::approximations(planned.study),
+        ..PlanResult::default()
     }
 }
 
@@ -66,6 +66,13 @@ fn layout_row(planned: &Planned<'_>, scored: &Scored, rank: usize, place: &Compa
     let threshold = threshold_gev(&planned.gamma.sample.words, &scored.gamma_words);
     let telescope_rates: Vec<f64> =
         layout.telescopes.iter().map(|placed| planned.accidental_hz(placed.kind)).collect();
+    let accidental_rate_hz =
+        accidental::array_rate_hz(&telescope_rates, layout.condition, layout.window_ns);
+    let cost = planned.cost(place.layout);
+    let pixels: usize = layout.telescopes.iter().map(|t| kinds[t.kind].camera.pixels.len()).sum();
+    let recording = planned.study.recording;
+    let event_bytes = pixels as f64 * recording.bytes_per_pixel;
+    let all_hz = scored.gamma.value + background.value + accidental_rate_hz;
     LayoutRow {
         rank: rank + 1,
         tier: place.tier,
@@ -80,12 +87,11 @@ fn layout_row(planned: &Planned<'_>, scored: &Scored, rank: usize, place: &Compa
         background_rate_error_hz: background.error,
         threshold_gev: threshold.value,
         threshold_error_gev: threshold.error,
-        accidental_rate_hz: accidental::array_rate_hz(
-            &telescope_rates,
-            layout.condition,
-            layout.window_ns,
-        ),
-        cost: planned.cost(place.layout),
+        accidental_rate_hz,
+        cost,
+        rate_per_cost_hz: if cost > 0.0 { scored.gamma.value / cost } else { f64::NAN },
+        rate_per_root_background: scored.gamma.value / background.value.sqrt(),
+        data_gb_per_night: all_hz * event_bytes * recording.hours_per_night * 3_600.0 * 1e-9,
         order_probability: place.order_probability,
         score: place.score,
         score_error: place.error,
@@ -218,16 +224,6 @@ fn warnings(planned: &Planned<'_>, scored: &[Scored], ranked: &[Compared]) -> Ve
     let mut warnings = Vec::new();
     let Some(best) = ranked.first() else { return warnings };
     let leader = &scored[best.layout];
-    if let [first, rest @ ..] = planned.study.sources.as_slice()
-        && !rest.is_empty()
-    {
-        let others: Vec<&str> = rest.iter().map(|source| source.name.as_str()).collect();
-        warnings.push(format!(
-            "only the first source, {}, is ranked; not used: {}",
-            first.name,
-            others.join(", ")
-        ));
-    }
     let edges = [(&planned.gamma, &leader.gamma_words, leader.gamma)].into_iter().chain(
         planned.backgrounds.iter().zip(&leader.backgrounds).map(|(w, (_, r, e))| (w, r, *e)),
     );
@@ -254,32 +250,12 @@ fn warnings(planned: &Planned<'_>, scored: &[Scored], ranked: &[Compared]) -> Ve
             ));
         }
     }
-    for scale in [0.85, 1.15] {
-        warnings.push(order_at(planned, ranked, scale));
-    }
     warnings
-}
-
-/// Whether the order by gamma rate changes with all light scaled.
-fn order_at(planned: &Planned<'_>, ranked: &[Compared], scale: f64) -> String {
-    let rates = |scale: f64| -> Vec<f64> {
-        ranked.iter().map(|row| planned.score(row.layout, scale).gamma.value).collect()
-    };
-    let found = robustness(&rates(1.0), &rates(scale));
-    let name = |place: usize| planned.study.layouts[ranked[place].layout].name.as_str();
-    let flips = found.flipped.iter().map(|&(a, b)| format!("{} / {}", name(a), name(b)));
-    let flips: Vec<String> = flips.collect();
-    let what = format!("with all light times {scale}");
-    if flips.is_empty() {
-        format!("{what}: the order by gamma rate is the same")
-    } else {
-        format!("{what}: pairs that change places by gamma rate: {}", flips.join("; "))
-    }
 }
 
 impl Planned<'_> {
     /// Accidental trigger rate of one telescope of a kind at its threshold, Hz.
-    fn accidental_hz(&self, kind: usize) -> f64 {
+    pub(super) fn accidental_hz(&self, kind: usize) -> f64 {
         let (threshold, sky) = (self.thresholds_pe[kind], self.sky_per_ns[kind]);
         let kind = &self.study.kinds[kind];
         let pixel = accidental::PixelNoise::new(kind, sky).crossing_rate_hz(threshold);

@@ -4,12 +4,9 @@ use std::sync::atomic::{AtomicBool, Ordering};
 
 use thiserror::Error;
 
-use crate::layout::cost::KindPrice;
 use crate::layout::generator::Pattern;
 use crate::layout::stages::{build_up, front, losses};
-use crate::layout::{
-    Condition, Found, LayoutError, Objective, Planes, Problem, Settings, Tariff, search,
-};
+use crate::layout::{Condition, Found, LayoutError, Objective, Planes, Problem, Settings, search};
 use crate::rates;
 use crate::report::{self, FoundRow, Provenance, ReportError, StageRow};
 use crate::study::{Layout, Placed, Study};
@@ -62,7 +59,7 @@ pub struct Best {
     pub searched_hz: f64,
     /// Rate on the other half, Hz.
     pub reported_hz: f64,
-    /// Sum of the kinds' costs.
+    /// Cost by the study's prices; what stands already is free.
     pub cost: f64,
     /// Whether no cheaper one of these has a higher rate.
     pub on_front: bool,
@@ -152,14 +149,7 @@ pub fn search_ground(
         backgrounds: Vec::new(),
         condition: Condition::any(wanted.condition),
         objective: Objective::GammaRate { spectrum: 0 },
-        tariff: Tariff {
-            kinds: study
-                .kinds
-                .iter()
-                .map(|kind| KindPrice { telescope: kind.cost, pad: 0.0 })
-                .collect(),
-            ..Tariff::default()
-        },
+        tariff: study.tariff.clone(),
         least_distance_m: 0.5 * wanted.pad_spacing_m,
         budget: wanted.budget,
     };
@@ -167,16 +157,21 @@ pub fn search_ground(
     searching();
     progress.stage("search", wanted.telescopes as u64);
     let mut best = Vec::new();
-    for telescopes in wanted.condition..=wanted.telescopes {
+    let is_built = |column: &usize| {
+        let column = &planned.columns[*column];
+        study.built.iter().any(|b| b.kind == column.kind && b.enu_m == column.position_m)
+    };
+    let fixed: Vec<usize> = (0..planned.columns.len()).filter(is_built).collect();
+    for telescopes in wanted.condition.max(fixed.len())..=wanted.telescopes {
         let settings = Settings {
             telescopes,
-            fixed: Vec::new(),
+            fixed: fixed.clone(),
             restarts: 16,
             steps: 40_000,
             seed: study.seed,
         };
         match search(&searched, &settings, stop) {
-            Ok(found) => best.push(described(&found[0], &searched, &reported)),
+            Ok(found) => best.push(described(&found[0], &fixed, &searched, &reported)),
             // More telescopes than the budget allows: the smaller layouts stand.
             Err(LayoutError::Impossible { .. }) if !best.is_empty() => break,
             Err(error) => return Err(error.into()),
@@ -217,7 +212,7 @@ fn pads(study: &Study, wanted: &Wanted) -> Result<Layout, SearchError> {
     };
     Ok(Layout {
         name: "pads".into(),
-        telescopes: points.iter().flat_map(on_pad).collect(),
+        telescopes: study.built.iter().cloned().chain(points.iter().flat_map(on_pad)).collect(),
         condition: wanted.condition,
         window_ns: study.layouts.first().map_or(50.0, |layout| layout.window_ns),
         line: 0,
@@ -239,7 +234,7 @@ fn planes(gamma: &Weighted, threshold_pe: impl Fn(usize) -> f64) -> Planes {
     }
 }
 
-fn described(found: &Found, searched: &Problem, reported: &Problem) -> Best {
+fn described(found: &Found, fixed: &[usize], searched: &Problem, reported: &Problem) -> Best {
     let placed = |column: usize| Placed {
         kind: searched.kinds[column],
         enu_m: searched.positions_m[column],
@@ -250,7 +245,7 @@ fn described(found: &Found, searched: &Problem, reported: &Problem) -> Best {
         reported_hz: reported.score(&found.members),
         cost: searched.cost(&found.members),
         on_front: false,
-        build_up: build_up(reported, &found.members, &[])
+        build_up: build_up(reported, &found.members, fixed)
             .into_iter()
             .map(|(column, rate)| (placed(column), rate))
             .collect(),

@@ -49,15 +49,23 @@ pub fn field_ut(study: &Study) -> Vector3<f64> {
 
 /// The reference source's spectrum, and one for each background.
 pub fn spectra(study: &Study) -> Result<(Spectrum, Vec<Spectrum>), SpectrumError> {
-    let resolve = |spectrum: &study::Spectrum| match spectrum {
+    let gamma = resolve(&study.sources[0].spectrum)?;
+    let backgrounds = study.backgrounds.iter().map(|background| resolve(&background.spectrum));
+    Ok((gamma, backgrounds.collect::<Result<_, _>>()?))
+}
+
+/// The spectra of all gamma-ray sources.
+pub fn sources(study: &Study) -> Result<Vec<Spectrum>, SpectrumError> {
+    study.sources.iter().map(|source| resolve(&source.spectrum)).collect()
+}
+
+fn resolve(spectrum: &study::Spectrum) -> Result<Spectrum, SpectrumError> {
+    match spectrum {
         study::Spectrum::Named(name) => Spectrum::named(name),
         study::Spectrum::PowerLaw { flux_m2_s_tev, pivot_tev, index, cutoff_tev } => {
             Ok(Spectrum::power_law(*flux_m2_s_tev, *pivot_tev, *index, *cutoff_tev))
         }
-    };
-    let gamma = resolve(&study.sources[0].spectrum)?;
-    let backgrounds = study.backgrounds.iter().map(|background| resolve(&background.spectrum));
-    Ok((gamma, backgrounds.collect::<Result<_, _>>()?))
+    }
 }
 
 /// The extinction a study asks for.

@@ -31,6 +31,7 @@ pub fn page(result: &PlanResult) -> String {
                     (figure(charts::effective_area_chart(result), "Effective area for gamma rays after the array trigger, before any image cut. Bars: standard errors from independent showers.", "effective_area.csv"))
                     (figure(charts::differential_rate_chart(result), "Differential trigger rate of the reference source. Its peak is the trigger threshold.", "differential_rate.csv"))
                     (figure(charts::light_pool_chart(result), "Mean Cherenkov light on the ground. Bars: standard errors of the mean.", "light_pool.csv"))
+                    (super::checks::sections(result))
                     (telescopes(result))
                     (limits(result))
                     (cautions())

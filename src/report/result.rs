@@ -19,6 +19,16 @@ pub struct PlanResult {
     pub kinds: Vec<KindRow>,
     /// Where the telescopes of each layout stand.
     pub maps: Vec<LayoutMap>,
+    /// Every source's own order.
+    pub sources: Vec<SourceRow>,
+    /// Gamma rates under other assumptions.
+    pub orders: Vec<OrderRow>,
+    /// What changes places under them.
+    pub order_changes: Vec<OrderChange>,
+    /// Leading layouts event by event.
+    pub finalists: Vec<FinalistRow>,
+    /// Their direction resolution.
+    pub directions: Vec<DirectionRow>,
     /// Counts of out-of-table look-ups and other things that must never be silent.
     pub counters: Vec<Counter>,
     /// What the reader must know before using the numbers.
@@ -119,12 +129,121 @@ pub struct LayoutRow {
     pub accidental_rate_hz: f64,
     /// Cost in the study's unit.
     pub cost: f64,
+    /// Rate of the reference source over cost, Hz; NaN without a cost.
+    pub rate_per_cost_hz: f64,
+    /// Rate of the reference source over the root of the background's, Hz^(1/2).
+    pub rate_per_root_background: f64,
+    /// Data of a night, 1e9 bytes.
+    pub data_gb_per_night: f64,
     /// Probability that this layout is truly ahead of the next, from paired resampling.
     pub order_probability: f64,
     /// Score, in the unit of the score's column.
     pub score: f64,
     /// Its standard error.
     pub score_error: f64,
+}
+
+/// A layout in the order of one source.
+#[derive(Clone, Debug, Default, PartialEq)]
+pub struct SourceRow {
+    /// Source.
+    pub source: String,
+    /// Layout.
+    pub layout: String,
+    /// Place in the order of this source, from 1.
+    pub place: usize,
+    /// Group that the errors cannot tell apart, from 1.
+    pub tier: usize,
+    /// Rate of the source, Hz.
+    pub gamma_rate_hz: f64,
+    /// Its standard error, Hz.
+    pub gamma_rate_error_hz: f64,
+    /// Peak of the differential trigger rate, GeV.
+    pub threshold_gev: f64,
+    /// Its standard error, GeV.
+    pub threshold_error_gev: f64,
+    /// Probability that it is truly ahead of the next.
+    pub order_probability: f64,
+    /// How many times as many showers would make that 95 %.
+    pub showers_factor: f64,
+}
+
+/// A layout's gamma rate under another assumption.
+#[derive(Clone, Debug, Default, PartialEq)]
+pub struct OrderRow {
+    /// What is assumed.
+    pub assumption: String,
+    /// Layout.
+    pub layout: String,
+    /// Place in the order by gamma rate, from 1.
+    pub place: usize,
+    /// Rate of the reference source, Hz.
+    pub gamma_rate_hz: f64,
+    /// Its standard error, Hz.
+    pub gamma_rate_error_hz: f64,
+    /// Over the rate as the study states it, on the same showers.
+    pub ratio: f64,
+    /// Its standard error, paired.
+    pub ratio_error: f64,
+}
+
+/// What an assumption does to the order by gamma rate.
+#[derive(Clone, Debug, Default, PartialEq)]
+pub struct OrderChange {
+    /// What is assumed.
+    pub assumption: String,
+    /// Kendall's rank correlation of the two orders.
+    pub kendall_tau: f64,
+    /// Whether another layout is best.
+    pub best_changes: bool,
+    /// Pairs that change places, first the one that was ahead.
+    pub flips: Vec<String>,
+    /// How many of them the errors leave no doubt about: both orders above 95 %.
+    pub decided: usize,
+}
+
+/// A leading layout with its window applied to single events.
+#[derive(Clone, Debug, Default, PartialEq)]
+pub struct FinalistRow {
+    /// Layout.
+    pub layout: String,
+    /// Coincidence window, ns.
+    pub window_ns: f64,
+    /// Gamma rate of the vote, without a window, Hz.
+    pub gamma_vote_hz: f64,
+    /// With the exact sliding window, Hz.
+    pub gamma_window_hz: f64,
+    /// And with the help of accidental triggers, Hz.
+    pub gamma_with_noise_hz: f64,
+    /// Background rate of the vote, Hz.
+    pub background_vote_hz: f64,
+    /// With the exact sliding window, Hz.
+    pub background_window_hz: f64,
+    /// And with the help of accidental triggers, Hz.
+    pub background_with_noise_hz: f64,
+    /// Probability that a telescope is up.
+    pub up_probability: f64,
+    /// Gamma rate expected when each telescope is up with that probability, Hz.
+    pub gamma_expected_hz: f64,
+}
+
+/// Direction resolution in a bin of true energy.
+#[derive(Clone, Debug, Default, PartialEq)]
+pub struct DirectionRow {
+    /// Layout.
+    pub layout: String,
+    /// Lower edge, GeV.
+    pub energy_low_gev: f64,
+    /// Upper edge, GeV.
+    pub energy_high_gev: f64,
+    /// Angle within which 68 % of the directions lie, deg; NaN for fewer than 20 events.
+    pub containment_68_deg: f64,
+    /// Its standard error, deg.
+    pub error_deg: f64,
+    /// Events with a direction.
+    pub events: usize,
+    /// Triggered events.
+    pub triggered: usize,
 }
 
 /// An effective area in one bin of true energy.

@@ -7,7 +7,7 @@ use thiserror::Error;
 
 use super::page::page;
 use super::result::{PlanResult, Provenance};
-use super::{charts, geography, provenance, tables};
+use super::{charts, checks, geography, provenance, tables};
 
 /// A report that could not be written.
 #[derive(Debug, Error)]
@@ -76,6 +76,10 @@ pub fn files(result: &PlanResult) -> Result<Vec<(String, Vec<u8>)>, ReportError>
         tables::effective_area_table(result),
         tables::rate_table(result),
         tables::light_pool_table(result),
+        checks::source_table(result),
+        checks::order_table(result),
+        checks::finalist_table(result),
+        checks::direction_table(result),
     ];
     let mut files = table_files(both, &result.provenance)?;
     let drawn = [

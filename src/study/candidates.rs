@@ -14,25 +14,50 @@ const MOST_LAYOUTS: usize = 10_000;
 /// Coincidence window of an array unless a study says otherwise. Common practice, no source.
 const WINDOW_NS: f64 = 80.0;
 
-/// Reads `[[layout]]`, `[[layout_family]]` and `layouts_file`.
-pub(super) fn layouts(
+/// Kinds of telescopes, the site, and what stands there already.
+type Ground<'a> = (&'a [TelescopeKind], &'a Site, &'a [Placed]);
+
+/// Reads `[[built]]`: telescopes that stand already and are members of every layout.
+pub(super) fn built(
     root: &Section<'_>,
     kinds: &[TelescopeKind],
     site: &Site,
+) -> Result<Vec<Placed>, StudyError> {
+    let mut telescopes = Vec::new();
+    for stand in root.sections("built")? {
+        add_stand(&stand, kinds, site, &mut telescopes)?;
+        stand.finish()?;
+    }
+    Ok(telescopes)
+}
+
+/// Whether a telescope of a file is one that stands already, to the centimetre.
+fn is_built(placed: &Placed, built: &[Placed]) -> bool {
+    let near = |other: &Placed| {
+        let apart = |axis: usize| (placed.enu_m[axis] - other.enu_m[axis]).abs();
+        other.kind == placed.kind && (0..3).all(|axis| apart(axis) < 0.01)
+    };
+    built.iter().any(near)
+}
+
+/// Reads `[[layout]]`, `[[layout_family]]` and `layouts_file`.
+pub(super) fn layouts(
+    root: &Section<'_>,
+    ground: Ground<'_>,
     files: &mut Companions,
 ) -> Result<Vec<Layout>, StudyError> {
     let mut layouts: Vec<Layout> = Vec::new();
     for section in root.sections("layout")? {
-        let layout = explicit(&section, kinds, site)?;
+        let layout = explicit(&section, ground)?;
         admit(&section, layout, &mut layouts)?;
         section.finish()?;
     }
     for section in root.sections("layout_family")? {
-        family(&section, kinds, site, &mut layouts)?;
+        family(&section, ground, &mut layouts)?;
         section.finish()?;
     }
     if let Some(name) = root.text_if_any("layouts_file")? {
-        imported(root, name, kinds, site, files, &mut layouts)?;
+        imported(root, name, ground, files, &mut layouts)?;
     }
     if layouts.is_empty() {
         let problem = "missing from the study; write at least one [[layout]] or [[layout_family]]";
@@ -46,8 +71,7 @@ pub(super) fn layouts(
 fn imported(
     root: &Section<'_>,
     name: &str,
-    kinds: &[TelescopeKind],
-    site: &Site,
+    (kinds, site, built): Ground<'_>,
     files: &mut Companions,
     layouts: &mut Vec<Layout>,
 ) -> Result<(), StudyError> {
@@ -58,12 +82,16 @@ fn imported(
     let candidates = from_geojson(&text, &names, site.reference());
     for candidate in candidates.map_err(|error| fault(error.to_string()))? {
         let least = candidate.condition.clauses.first().map_or(1, |clause| clause.least);
-        let members = candidate.members.iter().map(|member| member.kind).collect::<Vec<_>>();
+        let members = candidate.members.iter().map(|member| member.kind);
+        let members: Vec<usize> = members.chain(built.iter().map(|placed| placed.kind)).collect();
         let checked = candidate.condition.check(&members);
         checked.map_err(|error| fault(format!("layout {}: {error}", candidate.name)))?;
-        let mut telescopes = Vec::new();
+        let mut telescopes = built.to_vec();
         for member in candidate.members {
             let placed = Placed { kind: member.kind, enu_m: member.position_m };
+            if is_built(&placed, built) {
+                continue;
+            }
             let stands = stands(&placed, &telescopes, kinds, site);
             stands.map_err(|problem| fault(format!("layout {}: {problem}", candidate.name)))?;
             telescopes.push(placed);
@@ -92,40 +120,46 @@ fn kind_index(
     section.choice(key, &names)
 }
 
-fn explicit(
-    section: &Section<'_>,
-    kinds: &[TelescopeKind],
-    site: &Site,
-) -> Result<Layout, StudyError> {
+fn explicit(section: &Section<'_>, (kinds, site, built): Ground<'_>) -> Result<Layout, StudyError> {
     let name = section.text("name")?.to_owned();
-    let mut telescopes = Vec::new();
+    let mut telescopes = built.to_vec();
     for stand in section.sections("stand")? {
-        let kind = kind_index(&stand, "telescope", kinds)?;
-        let range = limits(-20_000.0, 20_000.0, "m");
-        let missing = || stand.wrong_section("no position; write at_enu_m = [[east, north], ...]");
-        let points = stand.points_if_any("at_enu_m", range)?.ok_or_else(missing)?;
-        for (index, point) in points.iter().enumerate() {
-            let up = point.get(2).copied().unwrap_or(0.0);
-            if !(up.abs() <= 1_000.0) {
-                let problem = format!("point {}: up must be from -1000 to 1000 m", index + 1);
-                return Err(stand.wrong("at_enu_m", problem));
-            }
-            let placed = Placed { kind, enu_m: [point[0], point[1], up] };
-            if let Err(problem) = stands(&placed, &telescopes, kinds, site) {
-                return Err(stand.wrong("at_enu_m", format!("point {}: {problem}", index + 1)));
-            }
-            telescopes.push(placed);
-        }
+        add_stand(&stand, kinds, site, &mut telescopes)?;
         stand.finish()?;
     }
     let (condition, window_ns) = condition(section, telescopes.len())?;
     Ok(Layout { name, telescopes, condition, window_ns, line: section.line() })
 }
 
-fn family(
-    section: &Section<'_>,
+/// Telescopes of one kind at some points.
+fn add_stand(
+    stand: &Section<'_>,
     kinds: &[TelescopeKind],
     site: &Site,
+    telescopes: &mut Vec<Placed>,
+) -> Result<(), StudyError> {
+    let kind = kind_index(stand, "telescope", kinds)?;
+    let range = limits(-20_000.0, 20_000.0, "m");
+    let missing = || stand.wrong_section("no position; write at_enu_m = [[east, north], ...]");
+    let points = stand.points_if_any("at_enu_m", range)?.ok_or_else(missing)?;
+    for (index, point) in points.iter().enumerate() {
+        let up = point.get(2).copied().unwrap_or(0.0);
+        if !(up.abs() <= 1_000.0) {
+            let problem = format!("point {}: up must be from -1000 to 1000 m", index + 1);
+            return Err(stand.wrong("at_enu_m", problem));
+        }
+        let placed = Placed { kind, enu_m: [point[0], point[1], up] };
+        if let Err(problem) = stands(&placed, telescopes, kinds, site) {
+            return Err(stand.wrong("at_enu_m", format!("point {}: {problem}", index + 1)));
+        }
+        telescopes.push(placed);
+    }
+    Ok(())
+}
+
+fn family(
+    section: &Section<'_>,
+    (kinds, site, built): Ground<'_>,
     layouts: &mut Vec<Layout>,
 ) -> Result<(), StudyError> {
     let name = section.text("name")?;
@@ -141,9 +175,9 @@ fn family(
     let turn = section.number_or("turn_deg", limits(-360.0, 360.0, "degrees"), 0.0)?.to_radians();
     let centre = section.tuple_if_any::<2>("centre_enu_m", limits(-2e4, 2e4, "m"))?;
     let centre = centre.unwrap_or_default();
-    let (condition, window_ns) = condition(section, count)?;
+    let (condition, window_ns) = condition(section, count + built.len())?;
     for spacing in spacings {
-        let mut telescopes = Vec::new();
+        let mut telescopes = built.to_vec();
         for [x, y] in shape.positions_m(count, spacing) {
             // Azimuths turn from north towards east.
             let east = centre[0] + x * turn.cos() + y * turn.sin();

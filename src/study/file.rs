@@ -7,13 +7,14 @@ use std::path::{Path, PathBuf};
 use sha2::{Digest, Sha256};
 use toml::de::DeTable;
 
+use crate::atmosphere::Atmosphere;
+use crate::layout::Tariff;
 use crate::response::CORES_PER_SHOWER;
-use crate::telescope::TelescopeKind;
 
 use super::error::StudyError;
 use super::reader::{Document, Section, limits};
-use super::resolved::{Budget, Engine, Ranking, Study};
-use super::{candidates, ground, instruments, sky};
+use super::resolved::{Budget, Engine, Ranking, Robustness, Study};
+use super::{candidates, costs, ground, instruments, sky};
 
 /// Largest study file, and largest file that a study names, bytes.
 pub const MOST_BYTES: u64 = 8 << 20;
@@ -113,11 +114,15 @@ fn resolved(
     let night_sky = sky::night_sky(root.section("night_sky")?)?;
     let kinds = instruments::kinds(&root, companions)?;
     let pointing = sky::pointing(root.section("pointing")?, &kinds)?;
-    let layouts = candidates::layouts(&root, &kinds, &site, companions)?;
+    let built = candidates::built(&root, &kinds, &site)?;
+    let tariff = costs::tariff(root.section_if_any("costs")?, &kinds, &site, &built)?;
+    let recording = costs::recording(root.section_if_any("recording")?)?;
+    let layouts = candidates::layouts(&root, (&kinds, &site, &built), companions)?;
     let sources = sky::sources(&root)?;
     let backgrounds = sky::backgrounds(&root)?;
     let budget = budget(root.section("budget")?)?;
-    let ranking = ranking(root.section_if_any("ranking")?, &kinds)?;
+    let ranking = ranking(root.section_if_any("ranking")?, &tariff)?;
+    let robustness = root.section_if_any("robustness")?.map(robustness).transpose()?;
     root.finish()?;
     let checksum = companions.hash.clone().finalize();
     Ok(Study {
@@ -131,12 +136,16 @@ fn resolved(
         air,
         night_sky,
         kinds,
+        built,
+        tariff,
+        recording,
         layouts,
         pointing,
         sources,
         backgrounds,
         budget,
         ranking,
+        robustness,
     })
 }
 
@@ -198,19 +207,31 @@ fn energies(
     Ok(range)
 }
 
-fn ranking(section: Option<Section<'_>>, kinds: &[TelescopeKind]) -> Result<Ranking, StudyError> {
+fn ranking(section: Option<Section<'_>>, tariff: &Tariff) -> Result<Ranking, StudyError> {
     const SCORES: [&str; 3] =
         ["gamma_rate_hz", "gamma_rate_per_cost", "gamma_rate_per_root_background"];
     let Some(section) = section else {
-        return Ok(Ranking { score: SCORES[0].into(), resamples: 400 });
+        return Ok(Ranking { score: SCORES[0].into(), resamples: 400, up_probability: 0.95 });
     };
     let score = SCORES[section.choice_or("score", &SCORES, 0)?].to_owned();
-    let free = kinds.iter().find(|kind| !(kind.cost > 0.0));
-    if let Some(free) = free.filter(|_| score == SCORES[1]) {
-        let problem = format!("needs a cost above 0 for every telescope; {} has none", free.name);
+    let free = tariff.kinds.iter().any(|price| !(price.telescope + price.pad > 0.0));
+    if free && score == SCORES[1] {
+        let problem = "needs a cost above 0 for every telescope; one has none";
         return Err(section.wrong("score", problem));
     }
     let resamples = section.count_or("resamples", 20, 100_000, 400)? as usize;
+    let up_probability =
+        section.number_or("up_probability", limits(0.0, 1.0, "probability"), 0.95)?;
     section.finish()?;
-    Ok(Ranking { score, resamples })
+    Ok(Ranking { score, resamples, up_probability })
+}
+
+fn robustness(section: Section<'_>) -> Result<Robustness, StudyError> {
+    let name = section.text_if_any("profile")?.unwrap_or("tropical");
+    let atmosphere = Atmosphere::named(name);
+    let atmosphere = atmosphere.map_err(|error| section.wrong("profile", error.to_string()))?;
+    let sky_factor = section.number_or("sky_factor", limits(0.1, 100.0, ""), 2.0)?;
+    let showers_share = section.number_or("showers_share", limits(0.01, 1.0, "share"), 0.25)?;
+    section.finish()?;
+    Ok(Robustness { atmosphere, sky_factor, showers_share })
 }

@@ -4,6 +4,7 @@
 //! [`StudyError`] that names file, line, key, value and what is allowed.
 
 mod candidates;
+mod costs;
 mod error;
 mod file;
 mod ground;
@@ -16,6 +17,6 @@ mod suggestion;
 pub use error::StudyError;
 pub use file::MOST_BYTES;
 pub use resolved::{
-    Air, Background, Budget, Engine, Exclusion, Layout, Placed, Pointing, Ranking, Site, Source,
-    Spectrum, Study,
+    Air, Background, Budget, Engine, Exclusion, Layout, Placed, Pointing, Ranking, Recording,
+    Robustness, Site, Source, Spectrum, Study,
 };

@@ -3,8 +3,8 @@
 use std::path::PathBuf;
 
 use crate::atmosphere::Atmosphere;
-use crate::layout::Constraints;
 use crate::layout::geodetic::Geodetic;
+use crate::layout::{Constraints, Tariff};
 use crate::shower::Species;
 use crate::telescope::{NightSky, TelescopeKind};
 
@@ -31,6 +31,12 @@ pub struct Study {
     pub night_sky: NightSky,
     /// Telescope kinds.
     pub kinds: Vec<TelescopeKind>,
+    /// Telescopes that stand already and stay: members of every layout.
+    pub built: Vec<Placed>,
+    /// Prices.
+    pub tariff: Tariff,
+    /// What an event takes on disk.
+    pub recording: Recording,
     /// Candidate layouts, explicit and generated, in the order of the file.
     pub layouts: Vec<Layout>,
     /// Where the telescopes look.
@@ -43,6 +49,8 @@ pub struct Study {
     pub budget: Budget,
     /// How to rank.
     pub ranking: Ranking,
+    /// Other assumptions to repeat the ranking under.
+    pub robustness: Option<Robustness>,
 }
 
 /// The light engine.
@@ -230,4 +238,26 @@ pub struct Ranking {
     pub score: String,
     /// Bootstrap resamples.
     pub resamples: usize,
+    /// Probability that a telescope is up.
+    pub up_probability: f64,
+}
+
+/// The volume of data.
+#[derive(Clone, Copy, Debug, PartialEq)]
+pub struct Recording {
+    /// Bytes of one pixel in one event.
+    pub bytes_per_pixel: f64,
+    /// Hours of observation a night.
+    pub hours_per_night: f64,
+}
+
+/// Simulations under other assumptions.
+#[derive(Clone, Debug)]
+pub struct Robustness {
+    /// Another air above the site.
+    pub atmosphere: Atmosphere,
+    /// Factor on the light of the night sky.
+    pub sky_factor: f64,
+    /// Share of the gamma showers that is simulated again for each.
+    pub showers_share: f64,
 }

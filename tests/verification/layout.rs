@@ -4,6 +4,7 @@ use std::sync::atomic::AtomicBool;
 
 use nightpool::layout::axes::{ImageAxis, containment, direction_deg};
 use nightpool::layout::candidate::{Candidate, Member};
+use nightpool::layout::coincidence::Window;
 use nightpool::layout::comparison::robustness;
 use nightpool::layout::cost::{KindPrice, Tariff};
 use nightpool::layout::geodetic::Geodetic;
@@ -61,6 +62,7 @@ fn problem(columns: usize, words: usize, seed: u64) -> Problem {
                 KindPrice { telescope: 2.0, pad: 0.1 },
             ],
             trench_per_m: 1e-3,
+            built: Vec::new(),
             control_house_m: Some([0.0; 3]),
         },
         least_distance_m: 30.0,
@@ -359,4 +361,66 @@ fn verify_axes_through_one_point_give_it_exactly() {
     assert!(direction_deg(&[image(0.2, 1.1), image(0.21, 0.5)]).is_none());
     let radii = (1..=100).map(|step| (f64::from(step), 1.0)).collect();
     assert_eq!(containment(radii, 0.68), Some(68.0));
+}
+
+#[test]
+fn verify_windows_and_noise_are_those_of_a_brute_force_count() {
+    let mut stream = Stream::keyed(6, Stage::Search, &[3]);
+    // Windows: against all groups of telescopes.
+    for least in 1..5_usize {
+        for _ in 0..200 {
+            let times: Vec<f64> = (0..6).map(|_| 200.0 * stream.uniform()).collect();
+            let window = Window { least, length_ns: 40.0, noise_hz: vec![0.0; 6] };
+            let mut fired: Vec<(f64, usize)> = times.iter().copied().zip(0..).collect();
+            let mut any = false;
+            each_subset(6, least, &mut |group| {
+                let of = || group.iter().map(|&member| times[member]);
+                let span = of().fold(f64::MIN, f64::max) - of().fold(f64::MAX, f64::min);
+                any |= span <= 40.0;
+            });
+            assert_eq!(window.outcome(&mut fired).coincident, any);
+        }
+    }
+    // Noise: two of three telescopes have fired 30 ns apart; the third and two more are noisy.
+    let noise_hz = vec![0.0, 0.0, 2e6, 3e6];
+    let window = Window { least: 3, length_ns: 80.0, noise_hz: noise_hz.clone() };
+    let outcome = window.outcome(&mut [(10.0, 0), (40.0, 1)]);
+    let count = 200_000;
+    let mut helped = 0.0;
+    for _ in 0..count {
+        let fires = |rate: &f64, stream: &mut Stream| {
+            // Times of a Poisson process over 400 ns around the shower.
+            let number = stream.poisson(rate * 400e-9);
+            (0..number).any(|_| {
+                let time = 400.0 * stream.uniform() - 180.0;
+                time.max(40.0) - time.min(10.0) <= 80.0
+            })
+        };
+        let first = fires(&noise_hz[2], &mut stream);
+        let second = fires(&noise_hz[3], &mut stream);
+        helped += if first || second { 1.0 } else { 0.0 };
+    }
+    let (share, p) = (helped / f64::from(count), outcome.with_noise);
+    assert!(!outcome.coincident);
+    assert!((share - p).abs() < 4.0 * (p / f64::from(count)).sqrt(), "{share} {p}");
+    // Two lacking: at least two accidental triggers of a Poisson mean, an upper bound.
+    let window = Window { least: 3, length_ns: 80.0, noise_hz: vec![1e3; 4] };
+    let mean: f64 = 3e3 * 160e-9;
+    let lacking = window.outcome(&mut [(0.0, 2)]).with_noise;
+    assert!((lacking / (0.5 * mean * mean) - 1.0).abs() < mean);
+}
+
+#[test]
+fn verify_prices_leave_out_what_stands_and_count_new_trench_only() {
+    let built = vec![([0.0, 0.0, 0.0], 0)];
+    let tariff = Tariff {
+        kinds: vec![KindPrice { telescope: 2.0, pad: 0.5 }],
+        trench_per_m: 0.01,
+        built,
+        control_house_m: Some([100.0, 0.0, 0.0]),
+    };
+    assert_eq!(tariff.cost(&[([0.0; 3], 0)]), 0.0);
+    // 40 m from the telescope that stands.
+    let with = tariff.cost(&[([0.0; 3], 0), ([0.0, 40.0, 0.0], 0)]);
+    assert!((with - 2.9).abs() < 1e-12, "{with}");
 }

@@ -7,6 +7,7 @@ mod hadronic;
 mod layout;
 mod light;
 mod muon_light;
+mod plan_checks;
 mod rates;
 mod report;
 mod response;

@@ -1,0 +1,96 @@
+//! What a plan says beside its ranking: sources, assumptions, single events, directions, what
+//! stands already.
+
+use std::path::Path;
+
+use nightpool::plan::plan;
+use nightpool::report::PlanResult;
+use nightpool::study::Study;
+
+use crate::command::TINY;
+
+fn planned(change: impl Fn(String) -> String) -> PlanResult {
+    let study = Study::parse(Path::new("tiny.toml"), &change(TINY.to_owned())).unwrap();
+    plan(&study, None, &()).unwrap()
+}
+
+fn more_sources(text: String) -> String {
+    let reference = "[[source]]\nname = \"reference\"\nspectrum = \"crab-hegra-2004\"\n";
+    assert!(text.contains(reference));
+    let own = |name: &str, index: f64| {
+        format!("[[source]]\nname = \"{name}\"\nflux_m2_s_tev = 1e-6\nindex = {index}\n")
+    };
+    let text = text.replace("gamma_showers = 64", "gamma_showers = 1_600");
+    text.replace(reference, &format!("{reference}{}{}", own("soft", 3.5), own("hard", 2.0)))
+}
+
+#[test]
+fn verify_a_plan_checks_its_ranking() {
+    let robust = "\n[robustness]\nprofile = \"tropical\"\nshowers_share = 0.5\n\
+                  [costs]\nper_pad = 0.5\nmirror_area_m2_and_cost = [100, 2]\n";
+    let result = planned(|text| more_sources(text) + robust);
+    // Three sources of three layouts; the reference's rates are those of the ranking; a harder
+    // source has the higher threshold.
+    assert_eq!(result.sources.len(), 9);
+    for row in &result.ranking {
+        let of = |source: &str| {
+            let same =
+                |s: &&nightpool::report::SourceRow| s.source == source && s.layout == row.layout;
+            result.sources.iter().find(same).unwrap()
+        };
+        assert!((of("reference").gamma_rate_hz / row.gamma_rate_hz - 1.0).abs() < 1e-9);
+        assert!(of("soft").threshold_gev < of("hard").threshold_gev);
+        assert!((row.rate_per_cost_hz * row.cost / row.gamma_rate_hz - 1.0).abs() < 1e-9);
+        assert!(row.data_gb_per_night > 0.0);
+    }
+    // Two telescopes of 100 m2 at the price of the law, and their pads.
+    let pair = result.ranking.iter().find(|row| row.layout == "pair 70 m").unwrap();
+    assert!((pair.cost - 5.0).abs() < 1e-9, "{}", pair.cost);
+    // Less light, more sky: fewer triggers; more light: more.
+    let ratios = |part: &str| {
+        let rows = result.orders.iter().filter(move |row| row.assumption.contains(part));
+        let rows: Vec<f64> = rows.map(|row| row.ratio).collect();
+        assert_eq!(rows.len(), 3, "{part}");
+        rows
+    };
+    assert!(ratios("0.85").iter().all(|ratio| (0.5..0.97).contains(ratio)));
+    assert!(ratios("1.15").iter().all(|ratio| (1.03..1.5).contains(ratio)));
+    assert!(ratios("sky noise x 2").iter().all(|ratio| (0.5..1.02).contains(ratio)));
+    assert!(ratios("air tropical").iter().all(|ratio| (0.6..1.4).contains(ratio)));
+    assert_eq!(result.order_changes.len(), 4);
+    // A window takes away, accidental triggers add; downtime takes away, and for pairs exactly
+    // the square of the probability to be up.
+    for row in &result.finalists {
+        assert!(row.gamma_window_hz <= row.gamma_vote_hz * (1.0 + 1e-9));
+        assert!(row.gamma_window_hz > 0.98 * row.gamma_vote_hz, "80 ns are many");
+        assert!(row.gamma_with_noise_hz >= row.gamma_window_hz);
+        if row.layout.starts_with("pair") {
+            let expected = row.gamma_vote_hz * 0.95_f64.powi(2);
+            assert!((row.gamma_expected_hz / expected - 1.0).abs() < 1e-9);
+        }
+    }
+    // Directions of stereo images are known to better than the camera's size.
+    let good = |row: &&nightpool::report::DirectionRow| row.containment_68_deg.is_finite();
+    assert!(result.directions.iter().filter(good).count() >= 6);
+    for row in result.directions.iter().filter(good) {
+        assert!((0.02..1.0).contains(&row.containment_68_deg), "{row:?}");
+        assert!(row.events <= row.triggered);
+    }
+}
+
+#[test]
+fn verify_telescopes_that_stand_are_in_every_layout_and_cost_nothing() {
+    let built =
+        "[[built]]\ntelescope = \"broad\"\nat_enu_m = [[0, 200]]\n\n[[layout]]\nname = \"mixed\"";
+    let costs = "\n[costs]\nmirror_area_m2_and_cost = [100, 1]\n";
+    let with = |text: String| text.replace("[[layout]]\nname = \"mixed\"", built) + costs;
+    let result = planned(with);
+    for row in &result.ranking {
+        let map = result.maps.iter().find(|map| map.layout == row.layout).unwrap();
+        let stands =
+            |t: &&nightpool::report::PlacedTelescope| (t.east_m, t.north_m) == (0.0, 200.0);
+        assert_eq!(map.telescopes.iter().filter(stands).count(), 1);
+    }
+    let pair = result.ranking.iter().find(|row| row.layout == "pair 70 m").unwrap();
+    assert_eq!((pair.telescopes, pair.cost), (3, 2.0));
+}
