@@ -17,13 +17,13 @@ const MOMENTS: usize = 4;
 
 /// Transmission to one observer from any altitude, zenith angle and wavelength.
 ///
-/// With q = 1 - (r0 / r)^2 and t = tan^2 z, a layer at distance r from the Earth's centre is crossed
-/// over a length sec z (1 + q t)^-1/2 of its thickness. For each absorber the table holds the
-/// moments of q over the column between observer and altitude, M_k = integral of density q^k; at a
-/// wavelength they add with the cross-sections as weights, and with the mean m of q and its central
-/// moments c2 and c3, x = 1 + m t,
+/// With q = 1 - (r0 / r)^2, a layer at distance r from the Earth's centre is crossed over
+/// (cos^2 z + q sin^2 z)^-1/2 of its thickness. For each absorber the table holds the moments of q
+/// over the column between observer and altitude, M_k = integral of density q^k; at a wavelength they
+/// add with the cross-sections as weights, and with the mean m of q, its central moments c2 and c3,
+/// s = (cos^2 z + m sin^2 z)^-1/2 and u = s^2 sin^2 z,
 ///
-/// tau = sec z M_0 x^-1/2 [1 + 3/8 c2 (t/x)^2 - 5/16 c3 (t/x)^3].
+/// tau = M_0 s [1 + 3/8 c2 u^2 - 5/16 c3 u^3].
 ///
 /// # Validity
 /// Zenith angles to 80 degrees, emission between the observer and the top of the atmosphere, 250 to
@@ -89,10 +89,11 @@ impl TransmissionTable {
     /// Optical depth of the same path.
     #[inline]
     pub fn optical_depth(&self, emission_m: f64, zenith_rad: f64, wavelength_nm: f64) -> f64 {
-        let (section, at) = place((wavelength_nm - BAND_NM.0) / STEP_NM, self.sections.len());
+        let (section, at) =
+            place((wavelength_nm - BAND_NM.0) * (1.0 / STEP_NM), self.sections.len());
         let (s, s1) = (&self.sections[section], &self.sections[section + 1]);
         let root = (emission_m - self.observer_m).max(0.0).sqrt();
-        let (cell, share) = place(root / STEP, self.columns.len());
+        let (cell, share) = place(root * (1.0 / STEP), self.columns.len());
         let (low, high) = (&self.columns[cell], &self.columns[cell + 1]);
         let mut moments = [0.0; MOMENTS];
         for part in 0..3 {
@@ -105,16 +106,15 @@ impl TransmissionTable {
         if moments[0] <= 0.0 {
             return 0.0;
         }
-        let secant = 1.0 / zenith_rad.cos();
-        let t = secant * secant - 1.0;
         let inverse = 1.0 / moments[0];
         let (m1, m2, m3) = (moments[1] * inverse, moments[2] * inverse, moments[3] * inverse);
         let c2 = m2 - m1 * m1;
         let c3 = m3 - m1 * (3.0 * m2 - 2.0 * m1 * m1);
-        let x = 1.0 + m1 * t;
-        let u = t / x;
-        let shape = 1.0 + u * u * (0.375 * c2 - 0.3125 * c3 * u);
-        secant * moments[0] * shape / x.sqrt()
+        let cosine2 = zenith_rad.cos().powi(2);
+        let sine2 = 1.0 - cosine2;
+        let secant = 1.0 / (cosine2 + m1 * sine2).sqrt();
+        let u = sine2 * secant * secant;
+        moments[0] * secant * (1.0 + u * u * (0.375 * c2 - 0.3125 * c3 * u))
     }
 }
 
@@ -122,6 +122,6 @@ impl TransmissionTable {
 #[inline]
 fn place(position: f64, count: usize) -> (usize, f64) {
     let position = position.max(0.0);
-    let cell = (position as usize).min(count - 2);
+    let cell = (position as i32 as usize).min(count - 2);
     (cell, (position - cell as f64).min(1.0))
 }

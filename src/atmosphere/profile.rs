@@ -114,6 +114,15 @@ impl Atmosphere {
         }
     }
 
+    /// A profile file if the text looks like a path (it holds a dot or a slash), else a name.
+    ///
+    /// # Errors
+    /// Those of [`Atmosphere::from_csv`] and [`Atmosphere::named`].
+    pub fn named_or_file(text: &str) -> Result<Self, AtmosphereError> {
+        let path = !text.starts_with("model:") && text.contains(['.', '/', '\\']);
+        if path { Self::from_csv(Path::new(text)) } else { Self::named(text) }
+    }
+
     /// The names of [`Atmosphere::named`] that need no numbers.
     pub fn names() -> impl Iterator<Item = &'static str> {
         ["us1976"].into_iter().chain(TABLES.iter().map(|(known, _)| *known))

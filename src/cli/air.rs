@@ -5,7 +5,7 @@ use std::path::{Path, PathBuf};
 
 use clap::{Args, ValueEnum};
 
-use crate::atmosphere::{Atmosphere, AtmosphereError, Extinction};
+use crate::atmosphere::{Atmosphere, Extinction};
 use crate::light::cherenkov::{Thresholds, largest_emission_angle_rad};
 use crate::report::charts::{AirCurve, air_chart};
 use crate::report::{check_destination, write_files};
@@ -105,17 +105,12 @@ fn say(line: &str) {
 
 fn atmospheres(arguments: &AirArguments) -> Result<Vec<Atmosphere>, Failure> {
     let prepared = |name: &String| {
-        let air = atmosphere(name).map_err(|error| Failure::Input(error.to_string()))?;
+        let air =
+            Atmosphere::named_or_file(name).map_err(|error| Failure::Input(error.to_string()))?;
         let air = air.with_co2_ppm(arguments.co2);
         Ok(if arguments.ozone == OzoneChoice::Standard { air.with_standard_ozone() } else { air })
     };
     arguments.atmosphere.iter().map(prepared).collect()
-}
-
-/// A file if it looks like a path, else a name.
-fn atmosphere(name: &str) -> Result<Atmosphere, AtmosphereError> {
-    let path = !name.starts_with("model:") && name.contains(['.', '/', '\\']);
-    if path { Atmosphere::from_csv(Path::new(name)) } else { Atmosphere::named(name) }
 }
 
 fn check(arguments: &AirArguments) -> Result<(), Failure> {

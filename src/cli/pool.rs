@@ -51,7 +51,7 @@ fn field(text: &str) -> Result<[f64; 3], String> {
 /// Arguments of `pool`.
 #[derive(Debug, Args)]
 pub struct PoolArguments {
-    /// Atmosphere, by name.
+    /// Atmosphere: a name, `model:LATITUDE,LONGITUDE,MONTH`, or a CSV file.
     #[arg(long, default_value = "us1976")]
     atmosphere: String,
     /// Altitude of the observer.
@@ -102,7 +102,7 @@ pub struct PoolArguments {
 /// Prints the densities.
 pub(super) fn run(arguments: &PoolArguments) -> Result<(), Failure> {
     check(arguments)?;
-    let air = Atmosphere::named(&arguments.atmosphere)
+    let air = Atmosphere::named_or_file(&arguments.atmosphere)
         .map_err(|error| Failure::Input(format!("--atmosphere: {error}")))?;
     let table = TransmissionTable::new(&Extinction::default(), &air, arguments.observer);
     let through = |emission: f64, zenith: f64, nm: f64| match arguments.extinction {

@@ -55,6 +55,8 @@ fn air_profile(study: &Study) -> &'static str {
     let name = study.air.atmosphere.name();
     if name == "us1976" {
         "U.S. Standard Atmosphere 1976, NOAA/NASA/USAF"
+    } else if name.starts_with("model:") {
+        "NRLMSISE-00: Picone et al. 2002, J. Geophys. Res. 107(A12), 1468"
     } else if name.contains(['.', '/']) {
         "a table named in the study"
     } else {
