@@ -23,6 +23,7 @@ use crate::rates::{self, Estimate, Spectrum, SpectrumError};
 use crate::report::PlanResult;
 use crate::response::{Column, Sample, Scene, TableError, Throw};
 use crate::study::Study;
+use crate::telescope::QuietError;
 
 /// A study that cannot be planned.
 #[derive(Debug, Error)]
@@ -36,6 +37,9 @@ pub enum PlanError {
     /// A stored response table that cannot be used.
     #[error("{0}; write --rebuild to simulate it again, or another --table")]
     Table(#[from] TableError),
+    /// A telescope kind has no quiet threshold.
+    #[error(transparent)]
+    Quiet(#[from] QuietError),
     /// Nothing triggered.
     #[error("no layout has a single gamma trigger; raise gamma_showers or lower the thresholds")]
     Empty,
@@ -134,6 +138,7 @@ fn simulate<'a>(
 ) -> Result<Planned<'a>, PlanError> {
     let sky_per_ns: Vec<f64> =
         study.kinds.iter().map(|kind| kind.sky_photoelectrons_per_ns(&study.night_sky)).collect();
+    let thresholds_pe = setup::thresholds_pe(study, &sky_per_ns)?;
     let (columns, members) = columns(study);
     let gamma = [setup::gamma_throw(study, &columns)].into_iter();
     let backgrounds = study.backgrounds.iter();
@@ -149,7 +154,6 @@ fn simulate<'a>(
         samples.into_iter().zip(spectra).map(|(sample, spectrum)| Weighted { sample, spectrum });
     let gamma = weighted.next().expect("a throw gives a sample");
     let backgrounds = weighted.collect();
-    let thresholds_pe = setup::thresholds_pe(study, &sky_per_ns);
     Ok(Planned { study, thresholds_pe, sky_per_ns, columns, members, gamma, backgrounds })
 }
 

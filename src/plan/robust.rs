@@ -81,7 +81,7 @@ fn simulated(
     let (throw, repetitions) = setup::gamma_throw(study, &planned.columns);
     let share = (repetitions as f64 * wanted.showers_share).round().max(1.0) as usize;
     let words = throw.word_count() * share;
-    let thresholds_pe = setup::thresholds_pe(study, &sky_per_ns);
+    let thresholds_pe = setup::thresholds_pe(study, &sky_per_ns)?;
     let columns = &planned.columns;
     let throws = [(throw, share)];
     progress.stage(&name, words as u64);

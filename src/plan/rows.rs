@@ -7,7 +7,7 @@ use crate::report::{
     AreaRow, Counter, KindRow, LayoutMap, LayoutRow, PlacedTelescope, PlanResult, PoolRow,
     Provenance, RateRow, SiteSummary,
 };
-use crate::telescope::{Threshold, accidental};
+use crate::telescope::{Accidental, Threshold, accidental};
 
 use super::{Planned, Scored, Weighted, models};
 
@@ -190,7 +190,7 @@ fn kinds(planned: &Planned<'_>) -> Vec<KindRow> {
             Threshold::QuietHz(rate) => format!("lowest with less than {rate} Hz from the sky"),
         },
         accidental_rate_hz: planned.accidental_hz(index),
-        topology: format!("{} connected pixels, any shape", kind.connected_pixels),
+        topology: kind.topology.to_string(),
     };
     planned.study.kinds.iter().enumerate().map(row).collect()
 }
@@ -258,13 +258,6 @@ impl Planned<'_> {
     pub(super) fn accidental_hz(&self, kind: usize) -> f64 {
         let (threshold, sky) = (self.thresholds_pe[kind], self.sky_per_ns[kind]);
         let kind = &self.study.kinds[kind];
-        let pixel = accidental::PixelNoise::new(kind, sky).crossing_rate_hz(threshold);
-        let groups = accidental::connected_groups(&kind.camera, kind.connected_pixels);
-        accidental::telescope_rate_hz(
-            groups,
-            kind.connected_pixels,
-            pixel,
-            kind.coincidence_gate_ns,
-        )
+        Accidental::of(kind, sky).rate_hz(threshold)
     }
 }

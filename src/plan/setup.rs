@@ -13,7 +13,7 @@ use crate::shower::profile::EmitterTable;
 use crate::shower::profile::shipped::DevelopmentTable;
 use crate::shower::{Direction, Species};
 use crate::study::{self, Study};
-use crate::telescope::{TelescopeKind, Threshold, accidental};
+use crate::telescope::{Accidental, QuietError, TelescopeKind, Threshold};
 use crate::units::radians;
 
 /// Slabs of air: converged to 1 % (test `verify_pool_converges_in_slabs_and_samples`).
@@ -120,12 +120,14 @@ pub fn light_model(study: &Study) -> LightModel {
 }
 
 /// The pixel threshold of each kind.
-pub fn thresholds_pe(study: &Study, sky_per_ns: &[f64]) -> Vec<f64> {
+pub fn thresholds_pe(study: &Study, sky_per_ns: &[f64]) -> Result<Vec<f64>, QuietError> {
     let kinds = study.kinds.iter().zip(sky_per_ns);
     kinds
         .map(|(kind, &sky)| match kind.threshold {
-            Threshold::FixedPe(pe) => pe,
-            Threshold::QuietHz(rate) => accidental::quiet_threshold_pe(kind, sky, rate),
+            Threshold::FixedPe(pe) => Ok(pe),
+            Threshold::QuietHz(rate) => {
+                Accidental::of(kind, sky).quiet_threshold_pe(&kind.name, rate)
+            }
         })
         .collect()
 }

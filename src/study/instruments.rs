@@ -1,6 +1,6 @@
 //! Telescope kinds.
 
-use crate::telescope::{Camera, Curve, PixelShape, TelescopeKind, Threshold};
+use crate::telescope::{Camera, Curve, PixelShape, TelescopeKind, Threshold, Topology};
 
 use super::error::StudyError;
 use super::file::Companions;
@@ -58,7 +58,19 @@ fn kind(section: &Section<'_>, files: &mut Companions) -> Result<TelescopeKind, 
         pulse_spread: section.number_or("pulse_spread", limits(0.0, 2.0, "relative"), 0.4)?,
         pulse_width_ns: section.number("pulse_width_ns", time)?,
         coincidence_gate_ns: section.number("coincidence_gate_ns", time)?,
-        connected_pixels: section.count("connected_pixels", 1, 32)? as usize,
+        electronic_noise_pe: section.number_or(
+            "electronic_noise_pe",
+            limits(0.0, 100.0, "photoelectrons, RMS"),
+            0.0,
+        )?,
+        crosstalk: section.number_or("crosstalk", limits(0.0, 0.6, "probability"), 0.0)?,
+        afterpulsing: section.number_or("afterpulsing", limits(0.0, 0.5, "probability"), 0.0)?,
+        afterpulse_pe: section.number_or(
+            "afterpulse_pe",
+            limits(0.1, 20.0, "photoelectrons"),
+            1.0,
+        )?,
+        topology: topology(section)?,
         threshold: threshold(section)?,
         cost: section.number_or("cost", limits(0.0, 1e12, "any unit"), 0.0)?,
     };
@@ -101,6 +113,27 @@ fn camera(section: &Section<'_>) -> Result<Camera, StudyError> {
         let problem = "gives more than 20000 pixels in this field of view; write a larger pitch";
         section.wrong("pixel_pitch_deg", problem)
     })
+}
+
+/// One pattern by one of four keys.
+fn topology(section: &Section<'_>) -> Result<Topology, StudyError> {
+    const OTHERS: [&str; 3] = ["compact_pixels", "majority_pixels", "patch_clip_pe"];
+    let mut given = None;
+    for key in OTHERS.into_iter().filter(|key| section.has(key)) {
+        if section.has("connected_pixels") || given.is_some() {
+            let problem = format!("write one of connected_pixels, {}", OTHERS.join(", "));
+            return Err(section.wrong(key, problem));
+        }
+        given = Some(match key {
+            "compact_pixels" => Topology::Compact(section.count(key, 1, 4)? as usize),
+            "majority_pixels" => Topology::Majority(section.count(key, 1, 32)? as usize),
+            _ => Topology::PatchSum(section.number(key, limits(0.1, 1_000.0, "photoelectrons"))?),
+        });
+    }
+    match given {
+        Some(topology) => Ok(topology),
+        None => Ok(Topology::Connected(section.count("connected_pixels", 1, 32)? as usize)),
+    }
 }
 
 fn threshold(section: &Section<'_>) -> Result<Threshold, StudyError> {

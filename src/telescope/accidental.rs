@@ -1,5 +1,7 @@
 //! How often the night sky alone triggers.
 
+use thiserror::Error;
+
 use super::camera::Camera;
 use super::kind::TelescopeKind;
 use super::noise::Noise;
@@ -71,34 +73,123 @@ pub fn telescope_rate_hz(groups: f64, pixels: usize, pixel_rate_hz: f64, window_
     groups * n * pixel_rate_hz * busy.powi(pixels as i32 - 1)
 }
 
-/// Accidental trigger rate of one telescope from sky noise alone, Hz.
-///
-/// Groups: sliding window, groups x n R^n w^(n-1). Patch sums: patches x crossing rate of the
-/// clipped sum. Both sum over groups that share pixels, so they are upper bounds, reached for rare
-/// triggers.
-///
-/// # Source
-/// Eckart & Shonka 1938, Phys. Rev. 53, 752; Rice 1945.
+/// Accidental trigger rate of one telescope from sky noise alone, Hz: [`Accidental::rate_hz`] of
+/// another topology than the kind's.
 pub fn topology_rate_hz(
     kind: &TelescopeKind,
     topology: Topology,
     sky_per_ns: f64,
     threshold_pe: f64,
 ) -> f64 {
-    let camera = &kind.camera;
-    let (groups, pixels) = match topology {
-        Topology::PatchSum(clip_pe) => {
-            return patch_rate_hz(kind, sky_per_ns, clip_pe, threshold_pe);
-        }
-        Topology::Connected(n) => (connected_groups(camera, n), n),
-        Topology::Compact(n) => (compact_groups(camera, n).len() as f64, n),
-        Topology::Majority(n) => (combinations(camera.pixels.len(), n), n),
-    };
-    let pixel = Noise::of_pixel(kind, sky_per_ns).crossing_rate_hz(threshold_pe);
-    telescope_rate_hz(groups, pixels, pixel, kind.coincidence_gate_ns)
+    Accidental::with_topology(kind, topology, sky_per_ns).rate_hz(threshold_pe)
 }
 
-fn patch_rate_hz(kind: &TelescopeKind, sky_per_ns: f64, clip_pe: f64, threshold_pe: f64) -> f64 {
+/// The law of one telescope's accidental triggers under one sky: made once, read at any threshold.
+///
+/// Groups: sliding window, groups x n R^n w^(n-1). Patch sums: patches x crossing rate of the
+/// clipped sum. Both sum over groups that share pixels, so they are upper bounds, reached for rare
+/// triggers; the rate can therefore exceed what a saturated trigger does.
+///
+/// # Source
+/// Eckart & Shonka 1938, Phys. Rev. 53, 752; Rice 1945.
+#[derive(Clone, Debug)]
+pub struct Accidental {
+    pixel: Noise,
+    pattern: Pattern,
+    largest_pe: f64,
+}
+
+#[derive(Clone, Debug)]
+enum Pattern {
+    Groups { groups: f64, pixels: usize, gate_ns: f64 },
+    Patches(Vec<(f64, Noise)>),
+}
+
+/// No quiet threshold.
+#[derive(Clone, Debug, Error, PartialEq)]
+#[error(
+    "{kind}: no pixel threshold up to {highest_pe} photoelectrons keeps accidental triggers of one \
+     telescope below {most_hz} Hz (there they come at {there_hz:.3e} Hz)"
+)]
+pub struct QuietError {
+    /// Name of the telescope kind.
+    pub kind: String,
+    /// Highest rate asked for, Hz.
+    pub most_hz: f64,
+    /// Highest threshold tried, photoelectrons.
+    pub highest_pe: f64,
+    /// Rate at that threshold, Hz.
+    pub there_hz: f64,
+}
+
+/// Lowest and highest threshold that are tried, and the step between, photoelectrons.
+pub const TRIED_PE: (f64, f64, f64) = (0.5, 1_000.0, 0.05);
+
+impl Accidental {
+    /// Of a kind with its own topology.
+    pub fn of(kind: &TelescopeKind, sky_per_ns: f64) -> Self {
+        Self::with_topology(kind, kind.topology, sky_per_ns)
+    }
+
+    /// Of a kind with another topology.
+    pub fn with_topology(kind: &TelescopeKind, topology: Topology, sky_per_ns: f64) -> Self {
+        let camera = &kind.camera;
+        let groups = |groups: f64, pixels: usize| Pattern::Groups {
+            groups,
+            pixels,
+            gate_ns: kind.coincidence_gate_ns,
+        };
+        let pattern = match topology {
+            Topology::PatchSum(clip_pe) => Pattern::Patches(patches(kind, sky_per_ns, clip_pe)),
+            Topology::Connected(n) => groups(connected_groups(camera, n), n),
+            Topology::Compact(n) => groups(compact_groups(camera, n).len() as f64, n),
+            Topology::Majority(n) => groups(combinations(camera.pixels.len(), n), n),
+        };
+        let largest_pe = topology.largest_margin_pe(camera);
+        Self { pixel: Noise::of_pixel(kind, sky_per_ns), pattern, largest_pe }
+    }
+
+    /// Upward crossings of a threshold by one pixel, Hz.
+    pub fn pixel_rate_hz(&self, threshold_pe: f64) -> f64 {
+        self.pixel.crossing_rate_hz(threshold_pe)
+    }
+
+    /// Accidental triggers of one telescope, Hz.
+    pub fn rate_hz(&self, threshold_pe: f64) -> f64 {
+        match &self.pattern {
+            Pattern::Groups { groups, pixels, gate_ns } => {
+                telescope_rate_hz(*groups, *pixels, self.pixel_rate_hz(threshold_pe), *gate_ns)
+            }
+            Pattern::Patches(patches) => {
+                let rates =
+                    patches.iter().map(|(n, noise)| n * noise.crossing_rate_hz(threshold_pe));
+                rates.sum()
+            }
+        }
+    }
+
+    /// The lowest pixel threshold, in steps of 0.05 photoelectrons from 0.5, at which one
+    /// telescope's accidental rate stays below a limit.
+    ///
+    /// # Errors
+    /// [`QuietError`] if there is none up to 1000 photoelectrons, or none that a clipped sum can
+    /// reach.
+    pub fn quiet_threshold_pe(&self, kind: &str, most_hz: f64) -> Result<f64, QuietError> {
+        let (first, last, step) = TRIED_PE;
+        let highest_pe = last.min(self.largest_pe);
+        let steps = ((highest_pe - first) / step).floor().max(0.0) as usize;
+        // Thresholds are multiples of the step, so that they do not depend on how they are reached.
+        let tried = (0..=steps).map(|place| first + place as f64 * step);
+        let mut quiet = tried.filter(|&threshold| self.rate_hz(threshold) <= most_hz);
+        quiet.next().ok_or_else(|| {
+            let there_hz = self.rate_hz(highest_pe);
+            QuietError { kind: kind.to_owned(), most_hz, highest_pe, there_hz }
+        })
+    }
+}
+
+/// Number of patches of each size, and the noise of their clipped sum.
+fn patches(kind: &TelescopeKind, sky_per_ns: f64, clip_pe: f64) -> Vec<(f64, Noise)> {
     let mut patches = [0_u32; 8];
     for pixel in 0..kind.camera.pixels.len() {
         patches[kind.camera.neighbours(pixel).len() + 1] += 1;
@@ -106,10 +197,9 @@ fn patch_rate_hz(kind: &TelescopeKind, sky_per_ns: f64, clip_pe: f64, threshold_
     let sizes = patches.iter().enumerate().filter(|(_, count)| **count > 0);
     sizes
         .map(|(members, &count)| {
-            let noise = Noise::of_patch(kind, sky_per_ns, members, clip_pe);
-            f64::from(count) * noise.crossing_rate_hz(threshold_pe)
+            (f64::from(count), Noise::of_patch(kind, sky_per_ns, members, clip_pe))
         })
-        .sum()
+        .collect()
 }
 
 /// Binomial coefficient.
@@ -136,19 +226,4 @@ pub fn array_rate_hz(telescope_rates_hz: &[f64], multiplicity: usize, window_ns:
 /// multiplicity below [`array_rate_hz`].
 pub fn array_slot_rate_hz(telescope_rates_hz: &[f64], multiplicity: usize, window_ns: f64) -> f64 {
     array_rate_hz(telescope_rates_hz, multiplicity, window_ns) / multiplicity as f64
-}
-
-/// The lowest pixel threshold at which one telescope's accidental rate stays below a limit.
-pub fn quiet_threshold_pe(kind: &TelescopeKind, sky_per_ns: f64, most_hz: f64) -> f64 {
-    let noise = PixelNoise::of_pixel(kind, sky_per_ns);
-    let groups = connected_groups(&kind.camera, kind.connected_pixels);
-    let rate = |threshold: f64| {
-        let pixel = noise.crossing_rate_hz(threshold);
-        telescope_rate_hz(groups, kind.connected_pixels, pixel, kind.coincidence_gate_ns)
-    };
-    let mut threshold = 0.5;
-    while rate(threshold) > most_hz && threshold < 1_000.0 {
-        threshold += 0.05;
-    }
-    threshold
 }

@@ -5,6 +5,7 @@ use thiserror::Error;
 use super::camera::Camera;
 use super::curve::Curve;
 use super::sky::NightSky;
+use super::trigger::Topology;
 
 /// A number of a telescope kind that is out of range.
 #[derive(Clone, Debug, Error, PartialEq)]
@@ -56,8 +57,17 @@ pub struct TelescopeKind {
     pub pulse_width_ns: f64,
     /// Pixels of a group must peak within this time of a neighbour, ns.
     pub coincidence_gate_ns: f64,
-    /// Number of connected pixels that make a trigger.
-    pub connected_pixels: usize,
+    /// RMS of the electronic noise of a pixel after shaping, photoelectrons.
+    pub electronic_noise_pe: f64,
+    /// Probability that a discharge sets off at least one more at the same time (optical crosstalk
+    /// of silicon sensors).
+    pub crosstalk: f64,
+    /// Probability that a photoelectron is followed by an afterpulse, long after it.
+    pub afterpulsing: f64,
+    /// Mean height of an afterpulse, photoelectrons; heights fall exponentially.
+    pub afterpulse_pe: f64,
+    /// Pattern of pixels that makes a trigger.
+    pub topology: Topology,
     /// Pixel threshold.
     pub threshold: Threshold,
     /// Cost of one telescope, any currency unit.
@@ -98,12 +108,15 @@ impl TelescopeKind {
         }
         positive("pulse_width_ns", self.pulse_width_ns, 200.0, "above 0, at most 200")?;
         positive("coincidence_gate_ns", self.coincidence_gate_ns, 1e3, "above 0, at most 1000")?;
-        let pixels = self.camera.pixels.len();
-        if self.connected_pixels == 0 || self.connected_pixels > pixels.min(32) {
-            let value = self.connected_pixels as f64;
-            let allowed = "1 to 32, and not more than there are pixels";
-            return Err(KindError { field: "connected_pixels", value, allowed });
-        }
+        self.topology.check(self.camera.pixels.len())?;
+        let most = |field, value: f64, most: f64, allowed| {
+            let fits = (0.0..=most).contains(&value);
+            if fits { Ok(()) } else { Err(KindError { field, value, allowed }) }
+        };
+        most("electronic_noise_pe", self.electronic_noise_pe, 100.0, "0 to 100")?;
+        most("crosstalk", self.crosstalk, 0.6, "0 to 0.6")?;
+        most("afterpulsing", self.afterpulsing, 0.5, "0 to 0.5")?;
+        positive("afterpulse_pe", self.afterpulse_pe, 20.0, "above 0, at most 20")?;
         let (field, value) = match self.threshold {
             Threshold::FixedPe(pe) => ("threshold_pe", pe),
             Threshold::QuietHz(rate) => ("quiet_rate_hz", rate),

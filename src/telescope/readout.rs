@@ -82,9 +82,9 @@ const RAISED: u8 = 3;
 
 impl<'a> Readout<'a> {
     /// A readout for one kind under a sky of a given photoelectron rate per pixel, with the kind's
-    /// own number of connected pixels.
+    /// own trigger pattern.
     pub fn new(kind: &'a TelescopeKind, sky_per_ns: f64) -> Self {
-        Self::with_topology(kind, sky_per_ns, Topology::Connected(kind.connected_pixels))
+        Self::with_topology(kind, sky_per_ns, kind.topology)
     }
 
     /// A readout with another trigger pattern.

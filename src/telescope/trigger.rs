@@ -1,6 +1,9 @@
 //! Which pixels must fire together.
 
+use core::fmt;
+
 use super::camera::{Camera, PixelShape};
+use super::kind::KindError;
 
 /// The pattern of pixels that triggers a telescope.
 ///
@@ -18,6 +21,56 @@ pub enum Topology {
     Majority(usize),
     /// The sum over a pixel and its neighbours, each clipped at this height, photoelectrons.
     PatchSum(f64),
+}
+
+impl Topology {
+    /// Checks its number against a camera of some pixels.
+    ///
+    /// # Errors
+    /// [`KindError`] with the allowed range.
+    pub fn check(self, pixels: usize) -> Result<(), KindError> {
+        let (field, value, most, allowed) = match self {
+            Self::Connected(n) => {
+                ("connected_pixels", n, 32, "1 to 32, and not more than there are pixels")
+            }
+            Self::Compact(n) => {
+                ("compact_pixels", n, 4, "1 to 4, and not more than there are pixels")
+            }
+            Self::Majority(n) => {
+                ("majority_pixels", n, 32, "1 to 32, and not more than there are pixels")
+            }
+            Self::PatchSum(clip_pe) => {
+                let allowed = "above 0, at most 1000";
+                let fits = clip_pe > 0.0 && clip_pe <= 1_000.0;
+                let error = KindError { field: "patch_clip_pe", value: clip_pe, allowed };
+                return if fits { Ok(()) } else { Err(error) };
+            }
+        };
+        if (1..=pixels.min(most)).contains(&value) {
+            return Ok(());
+        }
+        Err(KindError { field, value: value as f64, allowed })
+    }
+
+    /// The largest margin it can give in a camera, photoelectrons: a clipped sum has an end.
+    pub fn largest_margin_pe(self, camera: &Camera) -> f64 {
+        let Self::PatchSum(clip_pe) = self else { return f64::INFINITY };
+        let members = (0..camera.pixels.len()).map(|pixel| camera.neighbours(pixel).len() + 1);
+        clip_pe * members.max().unwrap_or(1) as f64
+    }
+}
+
+impl fmt::Display for Topology {
+    fn fmt(&self, f: &mut fmt::Formatter<'_>) -> fmt::Result {
+        match self {
+            Self::Connected(n) => write!(f, "{n} connected pixels, any shape"),
+            Self::Compact(n) => write!(f, "{n} pixels in a compact group"),
+            Self::Majority(n) => write!(f, "{n} pixels anywhere"),
+            Self::PatchSum(clip) => {
+                write!(f, "sum of a pixel and its neighbours, each up to {clip} pe")
+            }
+        }
+    }
 }
 
 /// All compact groups of a size, each sorted; empty if the size does not exist.

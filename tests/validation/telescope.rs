@@ -25,7 +25,11 @@ fn twelve_metre() -> TelescopeKind {
         pulse_spread: 0.4,
         pulse_width_ns: 4.0,
         coincidence_gate_ns: 8.0,
-        connected_pixels: 3,
+        electronic_noise_pe: 0.0,
+        crosstalk: 0.0,
+        afterpulsing: 0.0,
+        afterpulse_pe: 1.0,
+        topology: Topology::Connected(3),
         threshold: Threshold::FixedPe(5.6),
         cost: 1.0,
     }

@@ -84,6 +84,15 @@ fn verify_wrong_numbers_are_named_with_their_place_and_range() {
         ("count", "connected_pixels = 3", "connected_pixels = 3.5", "a whole number from 1 to 32"),
         ("minus", "gamma_showers = 64", "gamma_showers = -5", "a whole number from 16"),
         ("group", "connected_pixels = 3", "connected_pixels = 0", "from 1 to 32"),
+        ("compact", "connected_pixels = 3", "compact_pixels = 5", "a whole number from 1 to 4"),
+        (
+            "both",
+            "connected_pixels = 3",
+            "majority_pixels = 2\nconnected_pixels = 3",
+            "write one of",
+        ),
+        ("clip", "connected_pixels = 3", "patch_clip_pe = 0", "from 0.1 to 1000"),
+        ("cross", "connected_pixels = 3", "crosstalk = 0.9\nconnected_pixels = 3", "from 0 to 0.6"),
         ("zenith", "zenith_deg = 20", "zenith_deg = 85", "from 0 to 70 (degrees)"),
     ];
     for (name, piece, replacement, part) in cases {

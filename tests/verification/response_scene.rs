@@ -9,7 +9,7 @@ use nightpool::response::{Column, Sample, Scene, TableBuilder, Throw, reuse};
 use nightpool::shower::profile::DevelopmentTable;
 use nightpool::shower::profile::hillas::{self, Spread};
 use nightpool::shower::{Direction, Species};
-use nightpool::telescope::{Camera, Curve, PixelShape, TelescopeKind, Threshold};
+use nightpool::telescope::{Camera, Curve, PixelShape, TelescopeKind, Threshold, Topology};
 
 use crate::response::{Folder, stamp, throw};
 
@@ -28,7 +28,11 @@ fn kind(name: &str, mirror_area_m2: f64) -> TelescopeKind {
         pulse_spread: 0.4,
         pulse_width_ns: 5.0,
         coincidence_gate_ns: 10.0,
-        connected_pixels: 3,
+        electronic_noise_pe: 0.0,
+        crosstalk: 0.0,
+        afterpulsing: 0.0,
+        afterpulse_pe: 1.0,
+        topology: Topology::Connected(3),
         threshold: Threshold::FixedPe(4.0),
         cost: 1.0,
     }
