@@ -5,7 +5,7 @@ use std::path::{Path, PathBuf};
 
 use clap::{Args, ValueEnum};
 
-use crate::atmosphere::{Atmosphere, Extinction};
+use crate::atmosphere::{Atmosphere, Extinction, slant};
 use crate::light::cherenkov::{Thresholds, largest_emission_angle_rad};
 use crate::report::charts::{AirCurve, air_chart};
 use crate::report::{check_destination, write_files};
@@ -39,8 +39,9 @@ pub struct AirArguments {
     /// Altitude at which light is emitted: prints transmissions to the observer.
     #[arg(long, requires = "observer", value_parser = |text: &str| quantity(units::length_m(text)))]
     emission: Option<f64>,
-    /// Altitude of the observer of that light.
-    #[arg(long, requires = "emission", value_parser = |text: &str| quantity(units::length_m(text)))]
+    /// Altitude of the observer of that light; without `--emission`, adds range and depth along the
+    /// ray that the observer sees at the zenith angle.
+    #[arg(long, value_parser = |text: &str| quantity(units::length_m(text)))]
     observer: Option<f64>,
     /// Zenith angle at which the observer sees it.
     #[arg(long, default_value = "0deg", value_parser = |text: &str| quantity(units::angle_rad(text)))]
@@ -135,6 +136,12 @@ fn check(arguments: &AirArguments) -> Result<(), Failure> {
     within("--angstrom", arguments.angstrom, -1.0, 4.0)?;
     within("--aerosol-height in m", arguments.aerosol_height, 10.0, 20_000.0)?;
     within("--co2 in parts per million", arguments.co2, 0.0, 2_000.0)?;
+    if let (None, Some(observer)) = (arguments.emission, arguments.observer)
+        && let Some(altitude) = arguments.altitude.iter().find(|altitude| **altitude < observer)
+    {
+        let message = format!("--altitude {altitude} m is below --observer {observer} m");
+        return Err(Failure::Input(message));
+    }
     if let (Some(emission), Some(observer)) = (arguments.emission, arguments.observer)
         && emission <= observer
     {
@@ -186,7 +193,7 @@ fn heads<'a>(airs: &[Atmosphere], columns: &[&'a str]) -> Vec<&'a str> {
 }
 
 fn levels(arguments: &AirArguments, airs: &[Atmosphere]) -> String {
-    let columns = [
+    let mut columns = vec![
         "altitude_m",
         "temperature_k",
         "pressure_pa",
@@ -199,10 +206,13 @@ fn levels(arguments: &AirArguments, airs: &[Atmosphere]) -> String {
         "pion_threshold_gev",
         "proton_threshold_gev",
     ];
+    if arguments.observer.is_some() {
+        columns.extend(["slant_range_m", "slant_depth_g_cm2"]);
+    }
     let row = |air: &Atmosphere, altitude: f64| {
         let refractivity = air.refractivity(altitude, arguments.wavelength[0]);
         let thresholds = Thresholds::new(refractivity);
-        vec![
+        let mut row = vec![
             altitude,
             air.temperature_k(altitude),
             air.pressure_pa(altitude),
@@ -214,7 +224,12 @@ fn levels(arguments: &AirArguments, airs: &[Atmosphere]) -> String {
             thresholds.muon_gev,
             thresholds.pion_gev,
             thresholds.proton_gev,
-        ]
+        ];
+        if let Some(observer) = arguments.observer {
+            row.push(slant::range_m(altitude, observer, arguments.zenith));
+            row.push(air.slant_depth_g_cm2(altitude, observer, arguments.zenith));
+        }
+        row
     };
     let rows = with_names(airs, |air| arguments.altitude.iter().map(|h| row(air, *h)).collect());
     written_cells(arguments.format, &heads(airs, &columns), &rows)

@@ -6,4 +6,5 @@ mod hadronic;
 mod layout;
 mod light;
 mod rates;
+mod refraction;
 mod telescope;

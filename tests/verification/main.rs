@@ -1,5 +1,6 @@
 //! Checks against mathematics: limits, conservation, convergence, two methods. A module a layer.
 
+mod air_profiles;
 mod atmosphere;
 mod cascade;
 mod command;
