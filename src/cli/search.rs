@@ -130,6 +130,7 @@ fn layout(best: &Best, study: &Study, wanted: &Wanted) -> Layout {
         telescopes: best.telescopes.clone(),
         condition: wanted.condition,
         window_ns: study.layouts.first().map_or(50.0, |layout| layout.window_ns),
+        scan: None,
         line: 0,
     }
 }

@@ -122,6 +122,12 @@ pub fn plan(
     let order: Vec<usize> = ranked.iter().map(|row| row.layout).collect();
     let (orders, order_changes) = robust::orders(&planned, &order, tables, progress)?;
     let mut result = rows::result(&planned, &light, &scored, &ranked, pool);
+    if let Some(threshold) = result.ranking.first().map(|row| row.threshold_gev)
+        && threshold.is_finite()
+    {
+        result.reach = Some(pool::reach(study, &light, threshold));
+    }
+    result.scans = rows::scans(&planned, &planned.compared(&scored), &ranked);
     result.sources = sources::rows(&planned, &scored, &setup::sources(study)?);
     result.finalists = finalists::rows(&planned, &scored, &order);
     result.directions = finalists::directions(&planned, &scored, &order);

@@ -5,7 +5,7 @@ use core::f64::consts::TAU;
 use rayon::prelude::*;
 
 use crate::light::{LightModel, ShowerLight, View, parts};
-use crate::report::PoolRow;
+use crate::report::{PoolReach, PoolRow};
 use crate::shower::{Primary, Species};
 use crate::study::Study;
 
@@ -22,17 +22,38 @@ const PRIMARIES: [(Species, f64); 4] = [
     (Species::Proton, 1_000.0),
 ];
 
+/// How far the light of a gamma ray of some energy reaches on the ground.
+pub fn reach(study: &Study, light: &LightModel, energy_gev: f64) -> PoolReach {
+    let rows = of_primaries(study, light, &[(Species::Gamma, energy_gev)]);
+    let within = rows.iter().filter(|row| row.distance_m < 100.0);
+    let (sum, count) = within.fold((0.0, 0), |(sum, n), row| (sum + row.photons_m2, n + 1));
+    let inner = sum / f64::from(count.max(1));
+    // Where the density falls below a share of that inside 100 m for the last time.
+    let radius = |share: f64| {
+        let place = rows.windows(2).rposition(|pair| pair[0].photons_m2 >= share * inner);
+        place.map_or(f64::NAN, |place| {
+            let (a, b) = (&rows[place], &rows[place + 1]);
+            let fraction = (a.photons_m2 - share * inner) / (a.photons_m2 - b.photons_m2);
+            a.distance_m + fraction.clamp(0.0, 1.0) * (b.distance_m - a.distance_m)
+        })
+    };
+    PoolReach { energy_gev, inner_photons_m2: inner, half_m: radius(0.5), tenth_m: radius(0.1) }
+}
+
 /// Mean photons across the axis by distance, for a few primaries, along the pointing.
-///
-/// Averaged over eight azimuths about the axis.
 pub fn rows(study: &Study, light: &LightModel) -> Vec<PoolRow> {
+    of_primaries(study, light, &PRIMARIES)
+}
+
+/// Averaged over eight azimuths about the axis.
+fn of_primaries(study: &Study, light: &LightModel, primaries: &[(Species, f64)]) -> Vec<PoolRow> {
     let distances: Vec<f64> = (0..40).map(|step| 5.0 + 10.0 * f64::from(step)).collect();
     let photons = light.detectors() - 1;
     let developments = setup::developments();
     let (field_ut, pointing) = (setup::field_ut(study), setup::pointing(study));
     let (across, along) = pointing.transverse();
     let mut rows = Vec::new();
-    for (index, (species, energy_gev)) in PRIMARIES.into_iter().enumerate() {
+    for (index, &(species, energy_gev)) in primaries.iter().enumerate() {
         let primary = Primary { species, energy_gev, direction: pointing };
         let showers: Vec<Vec<f64>> = (0..SHOWERS)
             .into_par_iter()

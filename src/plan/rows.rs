@@ -1,11 +1,11 @@
 //! The plain result of a plan, row by row.
 
-use crate::layout::Compared;
+use crate::layout::{Compared, Comparison};
 use crate::light::LightModel;
 use crate::rates::{EnergyBin, differential_rates, edge_fraction, effective_areas, threshold_gev};
 use crate::report::{
     AreaRow, Counter, KindRow, LayoutMap, LayoutRow, PlacedTelescope, PlanResult, PoolRow,
-    Provenance, RateRow, SiteSummary,
+    Provenance, RateRow, ScanRow, SiteSummary,
 };
 use crate::telescope::{Accidental, Threshold, accidental};
 
@@ -96,6 +96,31 @@ fn layout_row(planned: &Planned<'_>, scored: &Scored, rank: usize, place: &Compa
         score: place.score,
         score_error: place.error,
     }
+}
+
+/// Scores of the layouts that are places of a scan of mirror area and spacing.
+pub fn scans(planned: &Planned<'_>, scores: &Comparison, ranked: &[Compared]) -> Vec<ScanRow> {
+    let found = |layout: usize| planned.study.layouts[layout].scan.as_ref();
+    let row = |place: &Compared| {
+        let scan = found(place.layout)?;
+        // The best of the family: the first of it in the order.
+        let same = |other: &&Compared| found(other.layout).is_some_and(|s| s.family == scan.family);
+        let best = ranked.iter().find(same)?.layout;
+        Some(ScanRow {
+            family: scan.family.clone(),
+            mirror_area_m2: scan.mirror_area_m2,
+            spacing_m: scan.spacing_m,
+            layout: planned.study.layouts[place.layout].name.clone(),
+            score: place.score,
+            score_error: place.error,
+            behind_best: if best == place.layout {
+                0.0
+            } else {
+                scores.probability_ahead(best, place.layout)
+            },
+        })
+    };
+    ranked.iter().filter_map(row).collect()
 }
 
 fn energy_rows(

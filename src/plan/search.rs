@@ -215,6 +215,7 @@ fn pads(study: &Study, wanted: &Wanted) -> Result<Layout, SearchError> {
         telescopes: study.built.iter().cloned().chain(points.iter().flat_map(on_pad)).collect(),
         condition: wanted.condition,
         window_ns: study.layouts.first().map_or(50.0, |layout| layout.window_ns),
+        scan: None,
         line: 0,
     })
 }

@@ -3,7 +3,7 @@
 use maud::{Markup, html};
 
 use super::figures;
-use super::result::{DirectionRow, FinalistRow, OrderRow, PlanResult, SourceRow};
+use super::result::{DirectionRow, FinalistRow, OrderRow, PlanResult, ScanRow, SourceRow};
 use super::tables::Table;
 
 /// Every source's own order: `sources`.
@@ -35,6 +35,20 @@ pub fn order_table(result: &PlanResult) -> Table {
         .number("gamma_rate_error_hz", "Hz", number(|row| row.gamma_rate_error_hz))
         .number("ratio_to_stated", "1", number(|row| row.ratio))
         .number("ratio_error", "1", number(|row| row.ratio_error))
+}
+
+/// Scans of mirror area and spacing: `scans`.
+pub fn scan_table(result: &PlanResult) -> Table {
+    let rows = &result.scans;
+    let number = |pick: fn(&ScanRow) -> f64| rows.iter().map(pick);
+    Table::new("scans")
+        .text("family", rows.iter().map(|row| row.family.clone()).collect())
+        .number("mirror_area_m2", "m2", number(|row| row.mirror_area_m2))
+        .number("spacing_m", "m", number(|row| row.spacing_m))
+        .text("layout", rows.iter().map(|row| row.layout.clone()).collect())
+        .number("score", "study's choice", number(|row| row.score))
+        .number("score_error", "study's choice", number(|row| row.score_error))
+        .number("behind_best_probability", "1", number(|row| row.behind_best))
 }
 
 /// Leading layouts event by event: `finalists`.

@@ -15,7 +15,7 @@ mod result;
 mod stage;
 mod tables;
 
-pub use checks::{direction_table, finalist_table, order_table, source_table};
+pub use checks::{direction_table, finalist_table, order_table, scan_table, source_table};
 pub use found::{build_up_table, found_files, front_table};
 pub use geography::layouts_geojson;
 pub use hazards::HAZARDS;
@@ -23,8 +23,8 @@ pub use page::page;
 pub use provenance::{ranking_json, run_json};
 pub use result::{
     Approximation, AreaRow, Counter, DirectionRow, FinalistRow, FoundRow, KindRow, LayoutMap,
-    LayoutRow, Model, OrderChange, OrderRow, PlacedTelescope, PlanResult, PoolRow, Provenance,
-    RateRow, SiteSummary, SourceRow, StageRow,
+    LayoutRow, Model, OrderChange, OrderRow, PlacedTelescope, PlanResult, PoolReach, PoolRow,
+    Provenance, RateRow, ScanRow, SiteSummary, SourceRow, StageRow,
 };
 pub use stage::{ReportError, check_destination, files, write_all, write_files};
 pub use tables::{Table, effective_area_table, light_pool_table, ranking_table, rate_table};

@@ -31,6 +31,10 @@ pub fn page(result: &PlanResult) -> String {
                     (figure(charts::effective_area_chart(result), "Effective area for gamma rays after the array trigger, before any image cut. Bars: standard errors from independent showers.", "effective_area.csv"))
                     (figure(charts::differential_rate_chart(result), "Differential trigger rate of the reference source. Its peak is the trigger threshold.", "differential_rate.csv"))
                     (figure(charts::light_pool_chart(result), "Mean Cherenkov light on the ground. Bars: standard errors of the mean.", "light_pool.csv"))
+                    @if let Some(svg) = charts::scan_chart(result) {
+                        (figure(svg, "Score over mirror area and spacing, every mirror area simulated as its own kind. A frame marks the best of the family, dots the places that the errors cannot tell from it.", "scans.csv"))
+                    }
+                    (figure(charts::site_map_chart(result), "The leading layout on its ground. Curves: where the light of a gamma ray of the layout's threshold energy, its core in the middle of the telescopes, stays under half and under a tenth of the density inside 100 m, on level ground.", "layouts.geojson"))
                     (super::checks::sections(result))
                     (telescopes(result))
                     (limits(result))

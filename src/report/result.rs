@@ -19,6 +19,10 @@ pub struct PlanResult {
     pub kinds: Vec<KindRow>,
     /// Where the telescopes of each layout stand.
     pub maps: Vec<LayoutMap>,
+    /// How far the light of a gamma ray at the leading layout's threshold reaches.
+    pub reach: Option<PoolReach>,
+    /// Scans of mirror area and spacing.
+    pub scans: Vec<ScanRow>,
     /// Every source's own order.
     pub sources: Vec<SourceRow>,
     /// Gamma rates under other assumptions.
@@ -141,6 +145,38 @@ pub struct LayoutRow {
     pub score: f64,
     /// Its standard error.
     pub score_error: f64,
+}
+
+/// How far the light of a gamma ray reaches across its axis.
+#[derive(Clone, Copy, Debug, Default, PartialEq)]
+pub struct PoolReach {
+    /// Energy, GeV.
+    pub energy_gev: f64,
+    /// Mean density inside 100 m, photons per square metre in the band of the light pool.
+    pub inner_photons_m2: f64,
+    /// Distance beyond which the density stays under half of that, m.
+    pub half_m: f64,
+    /// Distance beyond which it stays under a tenth, m.
+    pub tenth_m: f64,
+}
+
+/// A place of a scan of mirror area and spacing.
+#[derive(Clone, Debug, Default, PartialEq)]
+pub struct ScanRow {
+    /// Name of the family.
+    pub family: String,
+    /// Mirror area of its telescopes, m2.
+    pub mirror_area_m2: f64,
+    /// Spacing, m.
+    pub spacing_m: f64,
+    /// Layout.
+    pub layout: String,
+    /// Score.
+    pub score: f64,
+    /// Its standard error.
+    pub score_error: f64,
+    /// Probability that the family's best is truly ahead; 0 for the best itself.
+    pub behind_best: f64,
 }
 
 /// A layout in the order of one source.

@@ -77,6 +77,7 @@ pub fn files(result: &PlanResult) -> Result<Vec<(String, Vec<u8>)>, ReportError>
         tables::rate_table(result),
         tables::light_pool_table(result),
         checks::source_table(result),
+        checks::scan_table(result),
         checks::order_table(result),
         checks::finalist_table(result),
         checks::direction_table(result),
@@ -88,8 +89,10 @@ pub fn files(result: &PlanResult) -> Result<Vec<(String, Vec<u8>)>, ReportError>
         ("differential_rate.svg", charts::differential_rate_chart(result)),
         ("light_pool.svg", charts::light_pool_chart(result)),
         ("layout_map.svg", charts::layout_map_chart(result)),
+        ("site_map.svg", charts::site_map_chart(result)),
     ];
     files.extend(drawn.map(|(name, svg)| (name.to_owned(), svg.into_bytes())));
+    files.extend(charts::scan_chart(result).map(|svg| ("scan.svg".into(), svg.into_bytes())));
     files.push(("layouts.geojson".into(), geography::layouts_geojson(result).into_bytes()));
     files.push(("run.json".into(), provenance::run_json(result).into_bytes()));
     files.push(("report.html".into(), page(result).into_bytes()));

@@ -1,5 +1,6 @@
 //! Candidate layouts: explicit positions and patterns over spacings.
 
+use crate::layout::cost::KindPrice;
 use crate::layout::generator::Pattern;
 use crate::layout::geography::from_geojson;
 use crate::telescope::TelescopeKind;
@@ -7,7 +8,7 @@ use crate::telescope::TelescopeKind;
 use super::error::StudyError;
 use super::file::Companions;
 use super::reader::{Section, limits};
-use super::resolved::{Layout, Placed, Site};
+use super::resolved::{Layout, Placed, Scan, Site};
 
 const MOST_TELESCOPES: usize = 200;
 const MOST_LAYOUTS: usize = 10_000;
@@ -98,7 +99,8 @@ fn imported(
         }
         let (condition, window_ns) = (least, WINDOW_NS);
         let (name, line) = (candidate.name, root.line());
-        admit(root, Layout { name, telescopes, condition, window_ns, line }, layouts)?;
+        let layout = Layout { name, telescopes, condition, window_ns, scan: None, line };
+        admit(root, layout, layouts)?;
     }
     Ok(())
 }
@@ -128,7 +130,7 @@ fn explicit(section: &Section<'_>, (kinds, site, built): Ground<'_>) -> Result<L
         stand.finish()?;
     }
     let (condition, window_ns) = condition(section, telescopes.len())?;
-    Ok(Layout { name, telescopes, condition, window_ns, line: section.line() })
+    Ok(Layout { name, telescopes, condition, window_ns, scan: None, line: section.line() })
 }
 
 /// Telescopes of one kind at some points.
@@ -176,7 +178,19 @@ fn family(
     let centre = section.tuple_if_any::<2>("centre_enu_m", limits(-2e4, 2e4, "m"))?;
     let centre = centre.unwrap_or_default();
     let (condition, window_ns) = condition(section, count + built.len())?;
-    for spacing in spacings {
+    let areas = scanned_areas(section)?;
+    let scan = areas.len().max(1) * spacings.len() > 1;
+    let of_kind = |area: Option<f64>| match area {
+        Some(area) => {
+            let wanted = scanned_name(&kinds[kind].name, area);
+            kinds.iter().position(|kind| kind.name == wanted).unwrap_or(kind)
+        }
+        None => kind,
+    };
+    let areas: Vec<Option<f64>> =
+        if areas.is_empty() { vec![None] } else { areas.into_iter().map(Some).collect() };
+    for (area, spacing) in areas.iter().flat_map(|a| spacings.iter().map(move |s| (*a, *s))) {
+        let kind = of_kind(area);
         let mut telescopes = built.to_vec();
         for [x, y] in shape.positions_m(count, spacing) {
             // Azimuths turn from north towards east.
@@ -188,9 +202,45 @@ fn family(
             }
             telescopes.push(placed);
         }
-        let name = format!("{name} {spacing} m");
-        let layout = Layout { name, telescopes, condition, window_ns, line: section.line() };
-        admit(section, layout, layouts)?;
+        let mirror = area.map_or(String::new(), |area| format!(" {area} m2"));
+        let scan = scan.then(|| Scan {
+            family: name.to_owned(),
+            mirror_area_m2: kinds[kind].mirror_area_m2,
+            spacing_m: spacing,
+        });
+        let name = format!("{name}{mirror} {spacing} m");
+        let line = section.line();
+        admit(section, Layout { name, telescopes, condition, window_ns, scan, line }, layouts)?;
+    }
+    Ok(())
+}
+
+fn scanned_areas(section: &Section<'_>) -> Result<Vec<f64>, StudyError> {
+    let range = limits(0.1, 5_000.0, "m2");
+    Ok(section.numbers_if_any("mirror_areas_m2", range)?.unwrap_or_default())
+}
+
+fn scanned_name(kind: &str, mirror_area_m2: f64) -> String {
+    format!("{kind} of {mirror_area_m2} m2")
+}
+
+/// Adds a kind for each mirror area that a family scans: like the family's, but for its mirror's
+/// area and its cost, which follows the power law of [`KindPrice::of_mirror`].
+pub(super) fn add_scanned_kinds(
+    root: &Section<'_>,
+    kinds: &mut Vec<TelescopeKind>,
+) -> Result<(), StudyError> {
+    for section in root.sections("layout_family")? {
+        let base = kinds[kind_index(&section, "telescope", kinds)?].clone();
+        for area in scanned_areas(&section)? {
+            let name = scanned_name(&base.name, area);
+            if kinds.iter().all(|kind| kind.name != name) {
+                let reference = (base.mirror_area_m2, base.cost);
+                let price = KindPrice::of_mirror(area, reference, (0, 0.0), (0.0, 0.0));
+                let cost = price.telescope;
+                kinds.push(TelescopeKind { name, mirror_area_m2: area, cost, ..base.clone() });
+            }
+        }
     }
     Ok(())
 }

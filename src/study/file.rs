@@ -112,7 +112,8 @@ fn resolved(
     let site = ground::site(root.section("site")?, companions)?;
     let air = sky::air(root.section("air")?, companions)?;
     let night_sky = sky::night_sky(root.section("night_sky")?)?;
-    let kinds = instruments::kinds(&root, companions)?;
+    let mut kinds = instruments::kinds(&root, companions)?;
+    candidates::add_scanned_kinds(&root, &mut kinds)?;
     let pointing = sky::pointing(root.section("pointing")?, &kinds)?;
     let built = candidates::built(&root, &kinds, &site)?;
     let tariff = costs::tariff(root.section_if_any("costs")?, &kinds, &site, &built)?;

@@ -18,5 +18,5 @@ pub use error::StudyError;
 pub use file::MOST_BYTES;
 pub use resolved::{
     Air, Background, Budget, Engine, Exclusion, Layout, Placed, Pointing, Ranking, Recording,
-    Robustness, Site, Source, Spectrum, Study,
+    Robustness, Scan, Site, Source, Spectrum, Study,
 };

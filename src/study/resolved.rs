@@ -163,8 +163,21 @@ pub struct Layout {
     pub condition: usize,
     /// Coincidence window of the array, ns.
     pub window_ns: f64,
+    /// Its place in a scan of mirror area and spacing, if it is of one.
+    pub scan: Option<Scan>,
     /// Line of the study file that it comes from.
     pub line: usize,
+}
+
+/// A place in a scan of mirror area and spacing.
+#[derive(Clone, Debug, PartialEq)]
+pub struct Scan {
+    /// Name of the family.
+    pub family: String,
+    /// Mirror area of its telescopes, m2.
+    pub mirror_area_m2: f64,
+    /// Spacing, m.
+    pub spacing_m: f64,
 }
 
 /// Where the telescopes look.

@@ -94,3 +94,21 @@ fn verify_telescopes_that_stand_are_in_every_layout_and_cost_nothing() {
     let pair = result.ranking.iter().find(|row| row.layout == "pair 70 m").unwrap();
     assert_eq!((pair.telescopes, pair.cost), (3, 2.0));
 }
+
+#[test]
+fn verify_a_scan_of_mirror_areas_is_a_kind_each() {
+    let scan = "spacings_m = [70, 110]\nmirror_areas_m2 = [50, 100, 200]";
+    let text = TINY.replace("spacings_m = [70, 110]", scan);
+    let text = text.replace("quiet_rate_hz = 1000", "quiet_rate_hz = 1000\ncost = 1");
+    let study = Study::parse(Path::new("scan.toml"), &text).unwrap();
+    assert_eq!((study.kinds.len(), study.layouts.len()), (5, 7));
+    for layout in study.layouts.iter().filter(|layout| layout.name != "mixed") {
+        let scan = layout.scan.as_ref().unwrap();
+        let kind = &study.kinds[layout.telescopes[0].kind];
+        assert_eq!((kind.mirror_area_m2, scan.family.as_str()), (scan.mirror_area_m2, "pair"));
+        // The power law of the cost in mirror area.
+        assert!((kind.cost - (kind.mirror_area_m2 / 100.0).powf(1.35)).abs() < 1e-12);
+        let [a, b] = [0, 1].map(|telescope: usize| layout.telescopes[telescope].enu_m);
+        assert!(((a[0] - b[0]).hypot(a[1] - b[1]) - scan.spacing_m).abs() < 1e-9);
+    }
+}

@@ -2,7 +2,7 @@
 
 use nightpool::report::{
     Approximation, AreaRow, Counter, KindRow, LayoutMap, LayoutRow, Model, PlacedTelescope,
-    PlanResult, PoolRow, Provenance, RateRow, SiteSummary, files, write_all,
+    PlanResult, PoolReach, PoolRow, Provenance, RateRow, ScanRow, SiteSummary, files, write_all,
 };
 
 fn text(files: &[(String, Vec<u8>)], name: &str) -> String {
@@ -51,6 +51,20 @@ fn made_up() -> PlanResult {
     for index in 0..13 {
         add_layout(&mut result, index);
     }
+    for index in 0..12 {
+        let (area, spacing) = (f64::from(index / 4 + 1) * 40.0, f64::from(index % 4 + 1) * 50.0);
+        result.scans.push(ScanRow {
+            family: "squares <made up>".into(),
+            mirror_area_m2: area,
+            spacing_m: spacing,
+            layout: format!("square {index}"),
+            score: 0.01 * area - 0.000_02 * (spacing - 100.0).powi(2),
+            score_error: 0.02,
+            behind_best: f64::from(index) / 12.0,
+        });
+    }
+    let (half_m, tenth_m) = (160.0, 320.0);
+    result.reach = Some(PoolReach { energy_gev: 80.0, inner_photons_m2: 9.0, half_m, tenth_m });
     for (primary, energy) in [("gamma", 100.0), ("gamma", 1e3), ("gamma", 1e4), ("proton", 1e3)] {
         for step in 0..40 {
             let distance = 10.0 * f64::from(step) + 5.0;

@@ -137,22 +137,34 @@ impl<'a> Canvas<'a> {
 
     /// A line of text, centred vertically on its point.
     pub fn text(&self, text: &str, at: (f64, f64), size: i32, side: Side) {
-        self.write(text, at, size, side, FontTransform::None);
+        self.write(text, at, (size, INK), side, FontTransform::None);
+    }
+
+    /// A line of text in a colour.
+    pub fn inked(&self, text: &str, at: (f64, f64), size: i32, side: Side, ink: RGBColor) {
+        self.write(text, at, (size, ink), side, FontTransform::None);
     }
 
     /// A text that reads upward, centred on its point.
     pub fn text_upward(&self, text: &str, at: (f64, f64), size: i32) {
-        self.write(text, at, size, Side::Middle, FontTransform::Rotate270);
+        self.write(text, at, (size, INK), Side::Middle, FontTransform::Rotate270);
     }
 
-    fn write(&self, text: &str, at: (f64, f64), size: i32, side: Side, turn: FontTransform) {
+    fn write(
+        &self,
+        text: &str,
+        at: (f64, f64),
+        (size, ink): (i32, RGBColor),
+        side: Side,
+        turn: FontTransform,
+    ) {
         let h = match side {
             Side::Left => HPos::Left,
             Side::Middle => HPos::Center,
             Side::Right => HPos::Right,
         };
         let font = ("sans-serif", size).into_font().transform(turn);
-        let style = TextStyle::from(font).color(&INK).pos(Pos::new(h, VPos::Center));
+        let style = TextStyle::from(font).color(&ink).pos(Pos::new(h, VPos::Center));
         let at = (at.0.round() as i32, at.1.round() as i32);
         self.area.draw_text(text, &style, at).expect("drawing to memory does not fail");
     }

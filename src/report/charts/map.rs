@@ -5,12 +5,12 @@ use plotters::style::Color;
 use super::axes::{Frame, Scale};
 use super::canvas::{Canvas, Side, WIDTH, svg};
 use super::curves::shortened;
-use super::style::{INK, LABEL_FONT, Look, PALE, TICK_FONT, look};
+use super::style::{INK, LABEL_FONT, PALE, TICK_FONT, look};
 use crate::report::result::{LayoutMap, PlanResult};
 
 const COLUMNS: usize = 3;
 const MOST: usize = 9;
-const LEFT: f64 = 290.0;
+pub(super) const LEFT: f64 = 290.0;
 const SIDE: f64 = 724.0;
 const GAP: f64 = 60.0;
 const HEADING: f64 = 84.0;
@@ -92,21 +92,17 @@ fn draw_map(
     for telescope in &map.telescopes {
         let kind = kinds.iter().position(|kind| *kind == telescope.kind).unwrap_or(0);
         if let Some(at) = frame.at(telescope.east_m, telescope.north_m) {
-            canvas.marker(at, symbol_size(telescope.mirror_area_m2), look_of(kind));
+            canvas.marker(at, symbol_size(telescope.mirror_area_m2), look(kind));
         }
     }
     frame.draw_outline(canvas);
 }
 
-fn symbol_size(mirror_area_m2: f64) -> f64 {
+pub(super) fn symbol_size(mirror_area_m2: f64) -> f64 {
     (2.4 * mirror_area_m2.sqrt()).clamp(11.0, 42.0)
 }
 
-fn look_of(kind: usize) -> Look {
-    look(kind)
-}
-
-fn house(canvas: &Canvas<'_>, (x, y): (f64, f64)) {
+pub(super) fn house(canvas: &Canvas<'_>, (x, y): (f64, f64)) {
     let corners = [
         (x - 20.0, y + 18.0),
         (x - 20.0, y - 6.0),
@@ -117,11 +113,11 @@ fn house(canvas: &Canvas<'_>, (x, y): (f64, f64)) {
     canvas.fill(&corners, INK.mix(0.75).filled());
 }
 
-fn draw_key(canvas: &Canvas<'_>, result: &PlanResult, kinds: &[&str], y: f64) {
+pub(super) fn draw_key(canvas: &Canvas<'_>, result: &PlanResult, kinds: &[&str], y: f64) {
     let mut x = LEFT;
     for (index, kind) in kinds.iter().enumerate() {
         let area = result.kinds.iter().find(|row| row.kind == *kind).map(|row| row.mirror_area_m2);
-        canvas.marker((x + 30.0, y), symbol_size(area.unwrap_or(30.0)), look_of(index));
+        canvas.marker((x + 30.0, y), symbol_size(area.unwrap_or(30.0)), look(index));
         canvas.text(kind, (x + 85.0, y), LABEL_FONT, Side::Left);
         x += 170.0 + 29.0 * kind.chars().count() as f64;
     }

@@ -11,6 +11,8 @@ mod curves;
 mod map;
 mod order;
 mod pool;
+mod scan;
+mod site;
 mod style;
 
 pub use air::{AirCurve, air_chart};
@@ -18,6 +20,8 @@ pub use curves::{differential_rate_chart, effective_area_chart};
 pub use map::layout_map_chart;
 pub use order::ranking_chart;
 pub use pool::light_pool_chart;
+pub use scan::scan_chart;
+pub use site::site_map_chart;
 
 /// Layouts that charts show in colour; the others are drawn pale, without a legend.
 pub(crate) const SHOWN: usize = 6;
