@@ -4,7 +4,7 @@ use std::fmt::Write;
 
 use nightpool::atmosphere::{
     Atmosphere, Extinction, TransmissionTable, extinction::rayleigh_cross_section_cm2,
-    ozone::cross_section_cm2, slant,
+    ozone::cross_section_cm2, refraction::refractivity, slant, standard,
 };
 
 const EARTH_M: f64 = 6_371_008.8;
@@ -240,4 +240,46 @@ fn verify_each_extinction_can_be_switched_off_and_depth_inverts() {
         assert_eq!(air.altitude_m(1e5), -500.0);
         assert_eq!(air.altitude_m(1e-9), air.top_m());
     }
+}
+
+/// What interpolation between the altitudes of the tables costs, half-way between them, to 80 km:
+/// prints the largest relative differences from the definition. The temperature's slope jumps at six
+/// altitudes of the standard; the 25 m around those are counted by themselves.
+#[test]
+fn verify_interpolation_error_of_the_tables() {
+    let air = Atmosphere::us1976();
+    let mut worst = [0.0_f64; 3];
+    let (mut at_bends, mut bends) = (0.0_f64, 0);
+    for index in 0..3_200 {
+        let altitude = 25.0 * f64::from(index) + 12.5;
+        let state = standard::state(altitude);
+        let (kelvin, pascal) = (state.temperature_k, state.pressure_pa);
+        let offs = [
+            air.density_kg_m3(altitude) / state.density_kg_m3 - 1.0,
+            air.pressure_pa(altitude) / pascal - 1.0,
+            air.refractivity(altitude, 350.0) / refractivity(350.0, kelvin, pascal, 0.0, 450.0)
+                - 1.0,
+        ];
+        let slope =
+            |z: f64| standard::state(z + 1.0).temperature_k - standard::state(z).temperature_k;
+        if (slope(altitude - 12.5) - slope(altitude + 11.5)).abs() > 1e-4 {
+            bends += 1;
+            at_bends = offs.iter().fold(at_bends, |most, off| most.max(off.abs()));
+        } else {
+            for (most, off) in worst.iter_mut().zip(offs) {
+                *most = most.max(off.abs());
+            }
+        }
+    }
+    // Depth: the definition's density in 2.5 m steps from 80 km down.
+    let (mut depth, mut depth_off) = (air.depth_g_cm2(80_000.0), 0.0_f64);
+    for index in (0..32_000).rev() {
+        let altitude = 2.5 * f64::from(index);
+        depth += 0.25 * standard::state(altitude + 1.25).density_kg_m3;
+        depth_off = depth_off.max((air.depth_g_cm2(altitude) / depth - 1.0).abs());
+    }
+    println!("density, pressure, refractivity {worst:?}; at {bends} bends {at_bends:e}");
+    println!("depth {depth_off:e}");
+    assert!((4..=7).contains(&bends) && at_bends < 1e-4, "{bends}: {at_bends:e}");
+    assert!(worst.iter().all(|off| *off < 2e-6) && depth_off < 2e-6, "{worst:?} {depth_off:e}");
 }
