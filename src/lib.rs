@@ -3,7 +3,7 @@
 //! One direction of flow, a module a stage:
 //!
 //! ```text
-//! study -> atmosphere -> shower -> light -> telescope -> response -> rates -> layout -> report
+//! study -> atmosphere -> shower -> light -> telescope -> response -> rates -> layout -> scan -> report
 //! ```
 
 pub mod atmosphere;
@@ -16,6 +16,7 @@ pub mod plan;
 pub mod rates;
 pub mod report;
 pub mod response;
+pub mod scan;
 pub mod shower;
 pub mod site;
 pub mod staging;

@@ -12,6 +12,7 @@ mod plan;
 mod pool;
 mod progress;
 mod rows;
+mod scan;
 mod search;
 mod table;
 
@@ -40,6 +41,8 @@ enum Command {
     Air(air::AirArguments),
     /// Compare the layouts of a study: simulate, rank, report.
     Plan(PlanArguments),
+    /// Print trigger rates against the pixel threshold of one telescope kind, and the lowest quiet one.
+    Scan(scan::ScanArguments),
     /// Find the best layouts on the ground of a study: simulate pads, search, report.
     Search(SearchArguments),
     /// Print light density against distance from the shower axis.
@@ -55,6 +58,7 @@ pub fn run(arguments: Arguments) -> Result<(), Failure> {
         Command::Air(arguments) => air::run(&arguments),
         Command::Plan(arguments) => plan::run(&arguments),
         Command::Pool(arguments) => pool::run(&arguments),
+        Command::Scan(arguments) => scan::run(&arguments),
         Command::Search(arguments) => search::run(&arguments),
     }
 }

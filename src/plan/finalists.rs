@@ -8,7 +8,6 @@ use crate::report::{DirectionRow, FinalistRow};
 use crate::response::EVENTS_PER_WORD;
 
 use super::{Planned, Scored, Weighted, setup};
-use crate::consts::SPEED_OF_LIGHT_M_NS;
 
 /// Layouts that are looked at event by event.
 const MOST: usize = 6;
@@ -82,22 +81,17 @@ impl<'a> View<'a> {
     fn new(planned: &'a Planned<'a>, layout: usize) -> Self {
         let members = planned.members[layout].as_slice();
         let kind = |column: &usize| planned.columns[*column].kind;
-        let towards = setup::pointing(planned.study).to_source();
-        let front = |column: &usize| {
-            let position = nalgebra::Vector3::from(planned.columns[*column].position_m);
-            -position.dot(&towards) / SPEED_OF_LIGHT_M_NS
-        };
+        let thresholds_pe = &planned.thresholds_pe[layout];
+        let noise_hz = members.iter().map(|c| planned.accidental_hz(layout, kind(c))).collect();
+        let columns = members.iter().map(|&column| &planned.columns[column]);
+        let front_ns = setup::front_ns(planned.study, columns);
         let layout = &planned.study.layouts[layout];
         Self {
             planned,
             members,
-            thresholds_pe: members.iter().map(|c| planned.thresholds_pe[kind(c)]).collect(),
-            front_ns: members.iter().map(front).collect(),
-            window: Window {
-                least: layout.condition,
-                length_ns: layout.window_ns,
-                noise_hz: members.iter().map(|c| planned.accidental_hz(kind(c))).collect(),
-            },
+            thresholds_pe: members.iter().map(|c| thresholds_pe[kind(c)]).collect(),
+            front_ns,
+            window: Window { least: layout.condition, length_ns: layout.window_ns, noise_hz },
         }
     }
 

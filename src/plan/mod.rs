@@ -1,15 +1,18 @@
 //! From a study to its result: simulate once, score every layout on the same events.
 
 mod finalists;
+mod levels;
 mod models;
 mod pool;
 mod robust;
 mod rows;
+mod scan;
 mod search;
 mod setup;
 mod sources;
 mod tables;
 
+pub use scan::{ScanError, ScanRequest, scan};
 pub use search::{Best, SearchError, Wanted, best_files, search_ground};
 pub use tables::Tables;
 
@@ -22,8 +25,9 @@ use crate::light::LightModel;
 use crate::rates::{self, Estimate, Spectrum, SpectrumError};
 use crate::report::PlanResult;
 use crate::response::{Column, Sample, Scene, TableError, Throw};
+use crate::scan::{Array, ArrayEvents, NotQuiet};
 use crate::study::Study;
-use crate::telescope::QuietError;
+use crate::telescope::{Accidental, QuietError};
 
 /// A study that cannot be planned.
 #[derive(Debug, Error)]
@@ -40,6 +44,14 @@ pub enum PlanError {
     /// A telescope kind has no quiet threshold.
     #[error(transparent)]
     Quiet(#[from] QuietError),
+    /// A layout has no quiet threshold.
+    #[error("layout {layout}: {reason}")]
+    Loud {
+        /// The layout.
+        layout: String,
+        /// Why.
+        reason: NotQuiet,
+    },
     /// Nothing triggered.
     #[error("no layout has a single gamma trigger; raise gamma_showers or lower the thresholds")]
     Empty,
@@ -84,7 +96,10 @@ impl Scored {
 /// Everything the result is made from.
 struct Planned<'a> {
     study: &'a Study,
-    thresholds_pe: Vec<f64>,
+    /// Pixel thresholds by layout and kind; NaN for a kind that the layout lacks and that has none
+    /// of its own.
+    thresholds_pe: Vec<Vec<f64>>,
+    accidental: Vec<Accidental>,
     sky_per_ns: Vec<f64>,
     columns: Vec<Column>,
     members: Vec<Vec<usize>>,
@@ -132,6 +147,7 @@ pub fn plan(
     result.finalists = finalists::rows(&planned, &scored, &order);
     result.directions = finalists::directions(&planned, &scored, &order);
     (result.orders, result.order_changes) = (orders, order_changes);
+    result.sky_levels = levels::rows(&planned, &scored, &order, &light, tables, progress)?;
     Ok(result)
 }
 
@@ -144,7 +160,8 @@ fn simulate<'a>(
 ) -> Result<Planned<'a>, PlanError> {
     let sky_per_ns: Vec<f64> =
         study.kinds.iter().map(|kind| kind.sky_photoelectrons_per_ns(&study.night_sky)).collect();
-    let thresholds_pe = setup::thresholds_pe(study, &sky_per_ns)?;
+    let accidental = setup::accidentals(study, &sky_per_ns);
+    let given_pe = setup::thresholds_pe(study, &accidental)?;
     let (columns, members) = columns(study);
     let gamma = [setup::gamma_throw(study, &columns)].into_iter();
     let backgrounds = study.backgrounds.iter();
@@ -160,7 +177,31 @@ fn simulate<'a>(
         samples.into_iter().zip(spectra).map(|(sample, spectrum)| Weighted { sample, spectrum });
     let gamma = weighted.next().expect("a throw gives a sample");
     let backgrounds = weighted.collect();
-    Ok(Planned { study, thresholds_pe, sky_per_ns, columns, members, gamma, backgrounds })
+    let thresholds_pe = Vec::new();
+    let mut planned = Planned {
+        study,
+        thresholds_pe,
+        accidental,
+        sky_per_ns,
+        columns,
+        members,
+        gamma,
+        backgrounds,
+    };
+    let layouts = 0..study.layouts.len();
+    let found = layouts.map(|layout| planned.quiet_pe(layout, &given_pe));
+    planned.thresholds_pe = found.collect::<Result<_, _>>()?;
+    Ok(planned)
+}
+
+/// Simulates a study's backgrounds, and as few gammas as can be: for rates of showers only.
+fn simulate_backgrounds<'a>(
+    study: &'a Study,
+    tables: Option<&Tables>,
+    progress: &dyn Progress,
+) -> Result<Planned<'a>, PlanError> {
+    let light = scan::light(study, progress);
+    simulate(study, &light, setup::spectra(study)?, tables, progress)
 }
 
 /// What columns see of some throws under some air and sky; from a stored table as far as it goes.
@@ -211,6 +252,35 @@ fn columns(study: &Study) -> (Vec<Column>, Vec<Vec<usize>>) {
 }
 
 impl Planned<'_> {
+    /// The thresholds of a layout: those given, and the lowest quiet ones of the other kinds.
+    fn quiet_pe(&self, layout: usize, given_pe: &[Option<f64>]) -> Result<Vec<f64>, PlanError> {
+        let kinds = self.members[layout].iter().map(|&column| self.columns[column].kind);
+        if kinds.into_iter().all(|kind| given_pe[kind].is_some()) {
+            return Ok(given_pe.iter().map(|pe| pe.unwrap_or(f64::NAN)).collect());
+        }
+        let quiet = self.array(layout).quiet_thresholds_pe(given_pe, &self.study.trigger.quiet);
+        let name = || self.study.layouts[layout].name.clone();
+        quiet.map_err(|reason| PlanError::Loud { layout: name(), reason })
+    }
+
+    /// A layout with its backgrounds and its sky, for rates at any threshold.
+    fn array(&self, layout: usize) -> Array {
+        let members = self.members[layout].as_slice();
+        let columns = || members.iter().map(|&column| &self.columns[column]);
+        let front_ns = setup::front_ns(self.study, columns());
+        let mut events = ArrayEvents::default();
+        for weighted in &self.backgrounds {
+            events.insert(&weighted.sample, &weighted.spectrum, members, &front_ns);
+        }
+        Array {
+            events,
+            kinds: columns().map(|column| column.kind).collect(),
+            accidental: self.accidental.clone(),
+            least: self.study.layouts[layout].condition,
+            window_ns: self.study.layouts[layout].window_ns,
+        }
+    }
+
     /// Events of a sample that a layout keeps with some pixel thresholds, by kind. Light scaled by
     /// a factor is thresholds divided by it.
     fn vote(&self, sample: &Sample, layout: usize, thresholds_pe: &[f64]) -> Vec<u64> {
@@ -225,7 +295,7 @@ impl Planned<'_> {
     /// Votes and rates of one layout.
     fn score(&self, layout: usize) -> Scored {
         let vote = |weighted: &Weighted| {
-            let plane = self.vote(&weighted.sample, layout, &self.thresholds_pe);
+            let plane = self.vote(&weighted.sample, layout, &self.thresholds_pe[layout]);
             let words = rates::word_rates(&weighted.sample.words, &plane, &weighted.spectrum);
             let rate = rates::rate_hz(&weighted.sample.words, &words);
             (plane, words, rate)

@@ -32,7 +32,8 @@ pub fn orders(
     let mut assumptions: Vec<Assumption> = LIGHT_SCALES
         .iter()
         .map(|scale| {
-            let thresholds: Vec<f64> = planned.thresholds_pe.iter().map(|pe| pe / scale).collect();
+            let scaled = |all: &Vec<f64>| all.iter().map(|pe| pe / scale).collect();
+            let thresholds: Vec<Vec<f64>> = planned.thresholds_pe.iter().map(scaled).collect();
             let rates = planned.word_rates(&planned.gamma.sample, &thresholds, order);
             Assumption { name: format!("all light x {scale}"), rates, stated: stated.clone() }
         })
@@ -81,7 +82,7 @@ fn simulated(
     let (throw, repetitions) = setup::gamma_throw(study, &planned.columns);
     let share = (repetitions as f64 * wanted.showers_share).round().max(1.0) as usize;
     let words = throw.word_count() * share;
-    let thresholds_pe = setup::thresholds_pe(study, &sky_per_ns)?;
+    let thresholds_pe = as_quiet(planned, study, &sky_per_ns)?;
     let columns = &planned.columns;
     let throws = [(throw, share)];
     progress.stage(&name, words as u64);
@@ -90,6 +91,30 @@ fn simulated(
     let scale = repetitions as f64 / share as f64;
     let same = stated.iter().map(|rates| rates[..words].iter().map(|rate| rate * scale).collect());
     Ok(Assumption { name, rates, stated: same.collect() })
+}
+
+/// Thresholds of all layouts under another sky: fixed ones stay, a quiet one is that at which the
+/// telescope has no more accidental triggers than under the stated sky.
+fn as_quiet(
+    planned: &Planned<'_>,
+    study: &Study,
+    sky_per_ns: &[f64],
+) -> Result<Vec<Vec<f64>>, PlanError> {
+    let accidental = setup::accidentals(study, sky_per_ns);
+    let given_pe = setup::thresholds_pe(study, &accidental)?;
+    let of_layout = |stated: &Vec<f64>| {
+        let kinds = given_pe.iter().zip(stated).enumerate();
+        let of_kind = |(kind, (given, stated)): (usize, (&Option<f64>, &f64))| match given {
+            Some(pe) => Ok(*pe),
+            None if stated.is_nan() => Ok(f64::NAN),
+            None => {
+                let most_hz = planned.accidental[kind].rate_hz(*stated);
+                accidental[kind].quiet_threshold_pe(&study.kinds[kind].name, most_hz)
+            }
+        };
+        kinds.map(of_kind).collect::<Result<Vec<f64>, _>>()
+    };
+    Ok(planned.thresholds_pe.iter().map(of_layout).collect::<Result<_, _>>()?)
 }
 
 /// Rates of all layouts under an assumption beside those as stated, and what changes places.
@@ -146,11 +171,11 @@ impl Planned<'_> {
     fn word_rates(
         &self,
         sample: &Sample,
-        thresholds_pe: &[f64],
+        thresholds_pe: &[Vec<f64>],
         layouts: &[usize],
     ) -> Vec<Vec<f64>> {
         let of = |&layout: &usize| {
-            let plane = self.vote(sample, layout, thresholds_pe);
+            let plane = self.vote(sample, layout, &thresholds_pe[layout]);
             rates::word_rates(&sample.words, &plane, &self.gamma.spectrum)
         };
         layouts.iter().map(of).collect()

@@ -7,7 +7,7 @@ use crate::report::{
     AreaRow, Counter, KindRow, LayoutMap, LayoutRow, PlacedTelescope, PlanResult, PoolRow,
     Provenance, RateRow, ScanRow, SiteSummary,
 };
-use crate::telescope::{Accidental, Threshold, accidental};
+use crate::telescope::{Threshold, accidental};
 
 use super::{Planned, Scored, Weighted, models};
 
@@ -45,7 +45,7 @@ pub fn result(
         effective_areas,
         differential_rates,
         light_pool,
-        kinds: kinds(planned),
+        kinds: kinds(planned, ranked),
         maps: ranked.iter().map(|place| map(planned, place.layout)).collect(),
         counters: counters(planned),
         warnings: warnings(planned, scored, ranked),
@@ -64,10 +64,7 @@ fn layout_row(planned: &Planned<'_>, scored: &Scored, rank: usize, place: &Compa
         .collect();
     let background = scored.background();
     let threshold = threshold_gev(&planned.gamma.sample.words, &scored.gamma_words);
-    let telescope_rates: Vec<f64> =
-        layout.telescopes.iter().map(|placed| planned.accidental_hz(placed.kind)).collect();
-    let accidental_rate_hz =
-        accidental::array_rate_hz(&telescope_rates, layout.condition, layout.window_ns);
+    let accidental_rate_hz = planned.array_accidental_hz(place.layout);
     let cost = planned.cost(place.layout);
     let pixels: usize = layout.telescopes.iter().map(|t| kinds[t.kind].camera.pixels.len()).sum();
     let recording = planned.study.recording;
@@ -201,7 +198,14 @@ fn site(planned: &Planned<'_>, light: &LightModel) -> SiteSummary {
     }
 }
 
-fn kinds(planned: &Planned<'_>) -> Vec<KindRow> {
+fn kinds(planned: &Planned<'_>, ranked: &[Compared]) -> Vec<KindRow> {
+    // A quiet threshold is shown as it is in the best layout that has the kind.
+    let layout_of = |kind: usize| {
+        let has = |layout: usize| {
+            planned.study.layouts[layout].telescopes.iter().any(|placed| placed.kind == kind)
+        };
+        ranked.iter().map(|row| row.layout).find(|&layout| has(layout)).unwrap_or(0)
+    };
     let row = |(index, kind): (usize, &crate::telescope::TelescopeKind)| KindRow {
         kind: kind.name.clone(),
         mirror_area_m2: kind.collecting_area_m2(),
@@ -209,12 +213,16 @@ fn kinds(planned: &Planned<'_>) -> Vec<KindRow> {
         pixel_pitch_deg: kind.camera.pitch_deg,
         field_of_view_deg: kind.camera.field_of_view_deg,
         sky_pe_per_ns: planned.sky_per_ns[index],
-        threshold_pe: planned.thresholds_pe[index],
+        threshold_pe: planned.thresholds_pe[layout_of(index)][index],
         threshold_choice: match kind.threshold {
             Threshold::FixedPe(_) => "fixed".into(),
             Threshold::QuietHz(rate) => format!("lowest with less than {rate} Hz from the sky"),
+            Threshold::Quiet => {
+                let name = &planned.study.layouts[layout_of(index)].name;
+                format!("lowest quiet of each layout, here of {name}")
+            }
         },
-        accidental_rate_hz: planned.accidental_hz(index),
+        accidental_rate_hz: planned.accidental_hz(layout_of(index), index),
         topology: kind.topology.to_string(),
     };
     planned.study.kinds.iter().enumerate().map(row).collect()
@@ -279,10 +287,16 @@ fn warnings(planned: &Planned<'_>, scored: &[Scored], ranked: &[Compared]) -> Ve
 }
 
 impl Planned<'_> {
-    /// Accidental trigger rate of one telescope of a kind at its threshold, Hz.
-    pub(super) fn accidental_hz(&self, kind: usize) -> f64 {
-        let (threshold, sky) = (self.thresholds_pe[kind], self.sky_per_ns[kind]);
-        let kind = &self.study.kinds[kind];
-        Accidental::of(kind, sky).rate_hz(threshold)
+    /// Accidental coincidences of a layout, Hz.
+    pub(super) fn array_accidental_hz(&self, layout: usize) -> f64 {
+        let placed = &self.study.layouts[layout];
+        let rates = placed.telescopes.iter().map(|t| self.accidental_hz(layout, t.kind));
+        let rates: Vec<f64> = rates.collect();
+        accidental::array_rate_hz(&rates, placed.condition, placed.window_ns)
+    }
+
+    /// Accidental trigger rate of one telescope of a kind at its threshold in a layout, Hz.
+    pub(super) fn accidental_hz(&self, layout: usize, kind: usize) -> f64 {
+        self.accidental[kind].rate_hz(self.thresholds_pe[layout][kind])
     }
 }

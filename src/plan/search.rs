@@ -10,6 +10,7 @@ use crate::layout::{Condition, Found, LayoutError, Objective, Planes, Problem, S
 use crate::rates;
 use crate::report::{self, FoundRow, Provenance, ReportError, StageRow};
 use crate::study::{Layout, Placed, Study};
+use crate::telescope::Threshold;
 
 use super::{PlanError, Progress, Tables, Weighted, setup, simulate};
 
@@ -38,6 +39,15 @@ pub enum SearchError {
     /// The study has no ground to search.
     #[error("[site] boundary_enu_m: missing: a search needs the outline of the ground")]
     NoBoundary,
+    /// A threshold that depends on the layout.
+    #[error(
+        "{kind}: threshold = \"quiet\" depends on the layout that is searched for; write \
+         threshold_pe or quiet_rate_hz"
+    )]
+    NoLayout {
+        /// The telescope kind.
+        kind: String,
+    },
     /// Not enough pads.
     #[error("{pads} pads {spacing_m} m apart fit the boundary; at least {least} are needed")]
     FewPads {
@@ -131,6 +141,9 @@ pub fn search_ground(
     (stop, searching): (&AtomicBool, &dyn Fn()),
     progress: &dyn Progress,
 ) -> Result<Vec<Best>, SearchError> {
+    if let Some(kind) = study.kinds.iter().find(|kind| kind.threshold == Threshold::Quiet) {
+        return Err(SearchError::NoLayout { kind: kind.name.clone() });
+    }
     let pads = pads(study, wanted)?;
     let mut ground = study.clone();
     ground.layouts = vec![pads];
@@ -141,7 +154,7 @@ pub fn search_ground(
     progress.advance(1);
     let planned = simulate(&ground, &light, spectra, tables, progress)?;
     let planes =
-        planes(&planned.gamma, |column| planned.thresholds_pe[planned.columns[column].kind]);
+        planes(&planned.gamma, |column| planned.thresholds_pe[0][planned.columns[column].kind]);
     let problem = |parity: u32| Problem {
         positions_m: planned.columns.iter().map(|column| column.position_m).collect(),
         kinds: planned.columns.iter().map(|column| column.kind).collect(),

@@ -5,6 +5,7 @@ use core::f64::consts::PI;
 use nalgebra::Vector3;
 
 use crate::atmosphere::{Extinction, TransmissionTable};
+use crate::consts::SPEED_OF_LIGHT_M_NS;
 use crate::light::{Detector, LightModel, LightSettings};
 use crate::numerics::{Stage, Stream};
 use crate::rates::{Spectrum, SpectrumError};
@@ -119,17 +120,35 @@ pub fn light_model(study: &Study) -> LightModel {
     LightModel::new(&settings, &detectors).with_disc_radii_m(radii)
 }
 
-/// The pixel threshold of each kind.
-pub fn thresholds_pe(study: &Study, sky_per_ns: &[f64]) -> Result<Vec<f64>, QuietError> {
+/// Accidental triggers of each kind under a sky.
+pub fn accidentals(study: &Study, sky_per_ns: &[f64]) -> Vec<Accidental> {
     let kinds = study.kinds.iter().zip(sky_per_ns);
+    kinds.map(|(kind, &sky)| Accidental::of(kind, sky)).collect()
+}
+
+/// The pixel threshold of each kind; `None` for those that depend on the layout.
+pub fn thresholds_pe(
+    study: &Study,
+    accidental: &[Accidental],
+) -> Result<Vec<Option<f64>>, QuietError> {
+    let kinds = study.kinds.iter().zip(accidental);
     kinds
-        .map(|(kind, &sky)| match kind.threshold {
-            Threshold::FixedPe(pe) => Ok(pe),
-            Threshold::QuietHz(rate) => {
-                Accidental::of(kind, sky).quiet_threshold_pe(&kind.name, rate)
-            }
+        .map(|(kind, accidental)| match kind.threshold {
+            Threshold::FixedPe(pe) => Ok(Some(pe)),
+            Threshold::QuietHz(rate) => accidental.quiet_threshold_pe(&kind.name, rate).map(Some),
+            Threshold::Quiet => Ok(None),
         })
         .collect()
+}
+
+/// What is taken off the time of each column: the way of a plane front from the pointing, ns.
+pub fn front_ns<'a>(study: &Study, columns: impl Iterator<Item = &'a Column>) -> Vec<f64> {
+    let towards = pointing(study).to_source();
+    let front = |column: &Column| match study.trigger.delays_compensated {
+        true => -Vector3::from(column.position_m).dot(&towards) / SPEED_OF_LIGHT_M_NS,
+        false => 0.0,
+    };
+    columns.map(front).collect()
 }
 
 /// How gammas are thrown, and how often the throw is repeated.

@@ -14,6 +14,7 @@ mod provenance;
 mod result;
 mod stage;
 mod tables;
+mod thresholds;
 
 pub use checks::{direction_table, finalist_table, order_table, scan_table, source_table};
 pub use found::{build_up_table, found_files, front_table};
@@ -28,3 +29,4 @@ pub use result::{
 };
 pub use stage::{ReportError, check_destination, files, write_all, write_files};
 pub use tables::{Table, effective_area_table, light_pool_table, ranking_table, rate_table};
+pub use thresholds::{SkyLevelRow, ThresholdRow, ThresholdScan, sky_level_table};

@@ -36,6 +36,7 @@ pub fn page(result: &PlanResult) -> String {
                     }
                     (figure(charts::site_map_chart(result), "The leading layout on its ground. Curves: where the light of a gamma ray of the layout's threshold energy, its core in the middle of the telescopes, stays under half and under a tenth of the density inside 100 m, on level ground.", "layouts.geojson"))
                     (super::checks::sections(result))
+                    (super::thresholds::section(result))
                     (telescopes(result))
                     (limits(result))
                     (cautions())

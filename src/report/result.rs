@@ -1,5 +1,7 @@
 //! The plain result of a plan: numbers with their errors and units, no behaviour.
 
+use super::thresholds::SkyLevelRow;
+
 /// Everything the writers need.
 #[derive(Clone, Debug, Default, PartialEq)]
 pub struct PlanResult {
@@ -29,6 +31,8 @@ pub struct PlanResult {
     pub orders: Vec<OrderRow>,
     /// What changes places under them.
     pub order_changes: Vec<OrderChange>,
+    /// Thresholds and rates by sky level and layout.
+    pub sky_levels: Vec<SkyLevelRow>,
     /// Leading layouts event by event.
     pub finalists: Vec<FinalistRow>,
     /// Their direction resolution.

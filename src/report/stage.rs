@@ -7,7 +7,7 @@ use thiserror::Error;
 
 use super::page::page;
 use super::result::{PlanResult, Provenance};
-use super::{charts, checks, geography, provenance, tables};
+use super::{charts, checks, geography, provenance, tables, thresholds};
 
 /// A report that could not be written.
 #[derive(Debug, Error)]
@@ -81,6 +81,7 @@ pub fn files(result: &PlanResult) -> Result<Vec<(String, Vec<u8>)>, ReportError>
         checks::order_table(result),
         checks::finalist_table(result),
         checks::direction_table(result),
+        thresholds::sky_level_table(result),
     ];
     let mut files = table_files(both, &result.provenance)?;
     let drawn = [

@@ -111,7 +111,8 @@ fn resolved(
     let engine = Engine::Profile;
     let site = ground::site(root.section("site")?, companions)?;
     let air = sky::air(root.section("air")?, companions)?;
-    let night_sky = sky::night_sky(root.section("night_sky")?)?;
+    let (night_sky, moonlight) = sky::night_sky(root.section("night_sky")?)?;
+    let trigger = sky::trigger(root.section_if_any("trigger")?)?;
     let mut kinds = instruments::kinds(&root, companions)?;
     candidates::add_scanned_kinds(&root, &mut kinds)?;
     let pointing = sky::pointing(root.section("pointing")?, &kinds)?;
@@ -136,6 +137,8 @@ fn resolved(
         site,
         air,
         night_sky,
+        moonlight,
+        trigger,
         kinds,
         built,
         tariff,

@@ -139,13 +139,22 @@ fn topology(section: &Section<'_>) -> Result<Topology, StudyError> {
 fn threshold(section: &Section<'_>) -> Result<Threshold, StudyError> {
     let fixed = section.number_if_any("threshold_pe", limits(0.1, 1e6, "photoelectrons"))?;
     let quiet = section.number_if_any("quiet_rate_hz", limits(1e-6, 1e6, "Hz"))?;
+    if section.has("threshold") {
+        section.choice("threshold", &["quiet"])?;
+        if fixed.is_some() || quiet.is_some() {
+            let problem = "write one of threshold, threshold_pe, quiet_rate_hz";
+            return Err(section.wrong("threshold", problem));
+        }
+        return Ok(Threshold::Quiet);
+    }
     match (fixed, quiet) {
         (Some(pe), None) => Ok(Threshold::FixedPe(pe)),
         (None, Some(rate)) => Ok(Threshold::QuietHz(rate)),
         (None, None) => {
-            let problem = "no threshold; write threshold_pe (photoelectrons, fixed) or \
+            let problem = "no threshold; write threshold_pe (photoelectrons, fixed), \
                            quiet_rate_hz (Hz, the lowest threshold with fewer accidental \
-                           triggers of one telescope)";
+                           triggers of one telescope) or threshold = \"quiet\" (the lowest quiet \
+                           one of each array)";
             Err(section.wrong_section(problem))
         }
         _ => Err(section.wrong("quiet_rate_hz", "write either quiet_rate_hz or threshold_pe")),

@@ -17,6 +17,6 @@ mod suggestion;
 pub use error::StudyError;
 pub use file::MOST_BYTES;
 pub use resolved::{
-    Air, Background, Budget, Engine, Exclusion, Layout, Placed, Pointing, Ranking, Recording,
-    Robustness, Scan, Site, Source, Spectrum, Study,
+    Air, ArrayTrigger, Background, Budget, Engine, Exclusion, Layout, Moonlight, Placed, Pointing,
+    Ranking, Recording, Robustness, Scan, Site, Source, Spectrum, Study,
 };

@@ -5,6 +5,7 @@ use std::path::PathBuf;
 use crate::atmosphere::Atmosphere;
 use crate::layout::geodetic::Geodetic;
 use crate::layout::{Constraints, Tariff};
+use crate::scan::QuietRule;
 use crate::shower::Species;
 use crate::telescope::{NightSky, TelescopeKind};
 
@@ -29,6 +30,10 @@ pub struct Study {
     pub air: Air,
     /// The sky's light.
     pub night_sky: NightSky,
+    /// Brighter skies to plan for besides.
+    pub moonlight: Moonlight,
+    /// How the array triggers and what keeps it quiet.
+    pub trigger: ArrayTrigger,
     /// Telescope kinds.
     pub kinds: Vec<TelescopeKind>,
     /// Telescopes that stand already and stay: members of every layout.
@@ -51,6 +56,24 @@ pub struct Study {
     pub ranking: Ranking,
     /// Other assumptions to repeat the ranking under.
     pub robustness: Option<Robustness>,
+}
+
+/// Brighter skies to plan for besides the stated one.
+#[derive(Clone, Debug, PartialEq)]
+pub struct Moonlight {
+    /// Factors on the stated sky.
+    pub levels: Vec<f64>,
+    /// Share of the showers that each is simulated with.
+    pub showers_share: f64,
+}
+
+/// How an array triggers.
+#[derive(Clone, Copy, Debug, PartialEq)]
+pub struct ArrayTrigger {
+    /// Whether the array takes off what a plane front from the pointing needs from pad to pad.
+    pub delays_compensated: bool,
+    /// What makes a threshold quiet.
+    pub quiet: QuietRule,
 }
 
 /// The light engine.

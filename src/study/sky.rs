@@ -2,13 +2,14 @@
 
 use crate::atmosphere::Atmosphere;
 use crate::rates;
+use crate::scan::QuietRule;
 use crate::shower::Species;
 use crate::telescope::{Brightness, NightSky, TelescopeKind};
 
 use super::error::StudyError;
 use super::file::Companions;
 use super::reader::{Section, limits};
-use super::resolved::{Air, Background, Pointing, Source, Spectrum};
+use super::resolved::{Air, ArrayTrigger, Background, Moonlight, Pointing, Source, Spectrum};
 
 /// Reads `[air]`.
 pub(super) fn air(section: Section<'_>, files: &mut Companions) -> Result<Air, StudyError> {
@@ -48,7 +49,7 @@ fn atmosphere(section: &Section<'_>, files: &mut Companions) -> Result<Atmospher
 }
 
 /// Reads `[night_sky]`.
-pub(super) fn night_sky(section: Section<'_>) -> Result<NightSky, StudyError> {
+pub(super) fn night_sky(section: Section<'_>) -> Result<(NightSky, Moonlight), StudyError> {
     let magnitude = section
         .number_if_any("brightness_v_mag_arcsec2", limits(15.0, 23.5, "V magnitudes/arcsec2"))?;
     let photons =
@@ -64,8 +65,47 @@ pub(super) fn night_sky(section: Section<'_>) -> Result<NightSky, StudyError> {
     };
     let field = section.number_or("field_factor", limits(0.1, 100.0, ""), 1.0)?;
     let moonlight = section.number_or("moonlight_factor", limits(1.0, 1e4, ""), 1.0)?;
+    let factors = limits(1.0, 1e4, "times the stated sky");
+    let levels = section.numbers_if_any("moonlight_levels", factors)?.unwrap_or_default();
+    if levels.windows(2).any(|pair| pair[0] >= pair[1]) || levels.len() > 8 {
+        return Err(section.wrong("moonlight_levels", "write at most 8 rising factors"));
+    }
+    let share = limits(0.01, 1.0, "share of the showers");
+    let showers_share = section.number_or("moonlight_showers_share", share, 0.25)?;
     section.finish()?;
-    Ok(NightSky::new(brightness, field * moonlight))
+    let sky = NightSky::new(brightness, field * moonlight);
+    Ok((sky, Moonlight { levels, showers_share }))
+}
+
+/// Accidentals of an array over its shower triggers, unless a study says otherwise. Common
+/// practice, no source.
+const ACCIDENTAL_SHARE: f64 = 0.01;
+/// Triggers that a telescope's read-out takes, Hz, unless a study says otherwise. Common practice,
+/// no source.
+const READOUT_LIMIT_HZ: f64 = 10_000.0;
+
+/// Reads `[trigger]`.
+pub(super) fn trigger(section: Option<Section<'_>>) -> Result<ArrayTrigger, StudyError> {
+    let (accidental_share, readout_limit_hz) = (ACCIDENTAL_SHARE, READOUT_LIMIT_HZ);
+    let Some(section) = section else {
+        let quiet = QuietRule { accidental_share, readout_limit_hz };
+        return Ok(ArrayTrigger { delays_compensated: true, quiet });
+    };
+    let share = limits(1e-9, 1.0, "share of the array's shower triggers");
+    let limit = limits(1e-3, 1e9, "Hz a telescope");
+    let trigger = ArrayTrigger {
+        delays_compensated: section.choice_or("delays", &["compensated", "none"], 0)? == 0,
+        quiet: QuietRule {
+            accidental_share: section.number_or(
+                "quiet_accidental_share",
+                share,
+                accidental_share,
+            )?,
+            readout_limit_hz: section.number_or("readout_limit_hz", limit, readout_limit_hz)?,
+        },
+    };
+    section.finish()?;
+    Ok(trigger)
 }
 
 /// Reads `[pointing]`. The default cone reaches 3 degrees past the widest camera's edge.

@@ -149,6 +149,11 @@ impl Accidental {
         Self { pixel: Noise::of_pixel(kind, sky_per_ns), pattern, largest_pe }
     }
 
+    /// The highest threshold that its pattern can reach, photoelectrons.
+    pub fn largest_margin_pe(&self) -> f64 {
+        self.largest_pe
+    }
+
     /// Upward crossings of a threshold by one pixel, Hz.
     pub fn pixel_rate_hz(&self, threshold_pe: f64) -> f64 {
         self.pixel.crossing_rate_hz(threshold_pe)

@@ -26,6 +26,9 @@ pub enum Threshold {
     FixedPe(f64),
     /// The lowest at which accidental triggers of one telescope stay below a rate, Hz.
     QuietHz(f64),
+    /// The lowest quiet one of the array it stands in: it depends on the other telescopes, on how
+    /// many must fire, and on the sky.
+    Quiet,
 }
 
 /// A kind of telescope.
@@ -120,6 +123,7 @@ impl TelescopeKind {
         let (field, value) = match self.threshold {
             Threshold::FixedPe(pe) => ("threshold_pe", pe),
             Threshold::QuietHz(rate) => ("quiet_rate_hz", rate),
+            Threshold::Quiet => ("threshold", 1.0),
         };
         positive(field, value, 1e6, "above 0, at most 1e6")?;
         if !(self.cost >= 0.0 && self.cost.is_finite()) {

@@ -39,6 +39,11 @@ impl NightSky {
         Self { spectrum, scale: scale * factor }
     }
 
+    /// The same sky with all its light times a factor: moonlight of the dark sky's colour.
+    pub fn times(&self, factor: f64) -> Self {
+        Self { spectrum: self.spectrum.clone(), scale: self.scale * factor }
+    }
+
     /// Photons m^-2 s^-1 sr^-1 between two wavelengths, each counted with an efficiency.
     pub fn radiance_m2_s_sr(&self, band_nm: (f64, f64), efficiency: impl Fn(f64) -> f64) -> f64 {
         let panels = ((band_nm.1 - band_nm.0) / 10.0).ceil().max(4.0) as usize;

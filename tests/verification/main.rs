@@ -14,5 +14,6 @@ mod report;
 mod response;
 mod response_command;
 mod response_scene;
+mod scan;
 mod search_command;
 mod telescope;

@@ -14,6 +14,7 @@ mod pool;
 mod scan;
 mod site;
 mod style;
+mod thresholds;
 
 pub use air::{AirCurve, air_chart};
 pub use curves::{differential_rate_chart, effective_area_chart};
@@ -22,6 +23,7 @@ pub use order::ranking_chart;
 pub use pool::light_pool_chart;
 pub use scan::scan_chart;
 pub use site::site_map_chart;
+pub use thresholds::threshold_chart;
 
 /// Layouts that charts show in colour; the others are drawn pale, without a legend.
 pub(crate) const SHOWN: usize = 6;
