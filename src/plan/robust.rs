@@ -7,6 +7,7 @@ use crate::report::{OrderChange, OrderRow};
 use crate::response::Sample;
 use crate::study::{Robustness, Study};
 
+use super::tables::stored;
 use super::{PlanError, Planned, Progress, Tables, samples, setup};
 
 /// Factors on all light: mirrors, air, sensors together are known no better.
@@ -78,7 +79,6 @@ fn simulated(
     tables: Option<&Tables>,
     progress: &dyn Progress,
 ) -> Result<Assumption, PlanError> {
-    let light = setup::light_model(study);
     let (throw, repetitions) = setup::gamma_throw(study, &planned.columns);
     let share = (repetitions as f64 * wanted.showers_share).round().max(1.0) as usize;
     let words = throw.word_count() * share;
@@ -86,7 +86,13 @@ fn simulated(
     let columns = &planned.columns;
     let throws = [(throw, share)];
     progress.stage(&name, words as u64);
-    let found = samples(study, (&light, sky_per_ns), columns, &throws, tables, progress)?;
+    let found = match stored(study, (columns, &sky_per_ns), &throws, tables)? {
+        Some(found) => found,
+        None => {
+            let light = setup::light_model(study);
+            samples(study, (&light, sky_per_ns), columns, &throws, tables, progress)?
+        }
+    };
     let rates = planned.word_rates(&found[0], &thresholds_pe, order);
     let scale = repetitions as f64 / share as f64;
     let same = stated.iter().map(|rates| rates[..words].iter().map(|rate| rate * scale).collect());

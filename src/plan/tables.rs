@@ -3,9 +3,11 @@
 use std::path::PathBuf;
 
 use crate::response::store::sha256;
-use crate::response::{Sample, Scene, TableError, TableStamp, Throw, reuse};
+use crate::response::{Column, PadKey, Sample, Scene, TableError, TableStamp, Throw, reuse};
 use crate::study::Study;
 use crate::telescope::Threshold;
+
+use super::setup;
 
 /// Where response tables are kept, and whether to make them again.
 ///
@@ -40,19 +42,45 @@ pub(super) fn samples(
         });
         return Ok(fresh.collect());
     };
-    let stamp = TableStamp {
-        study_checksum: study.checksum.clone(),
-        upstream_checksum: sha256(upstream(study, scene).as_bytes()),
-        seed: study.seed,
-    };
-    let made_from: Vec<&Throw> = throws.iter().map(|(throw, _)| throw).collect();
-    let name = sha256(format!("{} {made_from:?}", stamp.upstream_checksum).as_bytes());
-    let folder = tables.folder.join(&name[..16]);
+    let (folder, stamp) = tables.place(study, &scene.sky_per_ns, throws);
     reuse::samples(&folder, &stamp, scene, throws, tables.rebuild, tick)
 }
 
+/// The same from a stored table alone, without light tables and so without a look at its first
+/// words; nothing if it lacks something or is to be rebuilt.
+pub(super) fn stored(
+    study: &Study,
+    (columns, sky_per_ns): (&[Column], &[f64]),
+    throws: &[(Throw, usize)],
+    tables: Option<&Tables>,
+) -> Result<Option<Vec<Sample>>, TableError> {
+    let Some(tables) = tables.filter(|tables| !tables.rebuild) else { return Ok(None) };
+    let (folder, stamp) = tables.place(study, sky_per_ns, throws);
+    let pads: Vec<PadKey> = columns.iter().map(|column| PadKey::of(column, &study.kinds)).collect();
+    reuse::stored(&folder, &stamp, &pads, throws)
+}
+
+impl Tables {
+    /// The folder of the table of some throws under some sky, and what it is made from.
+    fn place(
+        &self,
+        study: &Study,
+        sky_per_ns: &[f64],
+        throws: &[(Throw, usize)],
+    ) -> (PathBuf, TableStamp) {
+        let stamp = TableStamp {
+            study_checksum: study.checksum.clone(),
+            upstream_checksum: sha256(upstream(study, sky_per_ns).as_bytes()),
+            seed: study.seed,
+        };
+        let made_from: Vec<&Throw> = throws.iter().map(|(throw, _)| throw).collect();
+        let name = sha256(format!("{} {made_from:?}", stamp.upstream_checksum).as_bytes());
+        (self.folder.join(&name[..16]), stamp)
+    }
+}
+
 /// Everything that decides what a cell of the table holds, spelt out; nothing else.
-fn upstream(study: &Study, scene: &Scene<'_>) -> String {
+fn upstream(study: &Study, sky_per_ns: &[f64]) -> String {
     let kinds: Vec<_> = study
         .kinds
         .iter()
@@ -63,12 +91,6 @@ fn upstream(study: &Study, scene: &Scene<'_>) -> String {
         })
         .collect();
     let place = (study.site.altitude_m, study.site.field_ut);
-    format!(
-        "{} {place:?} {:?} {:?} {:?} {:?} {kinds:?}",
-        study.engine.name(),
-        study.air,
-        scene.sky_per_ns,
-        scene.pointing,
-        scene.light_scale,
-    )
+    let (engine, air, pointing) = (study.engine.name(), &study.air, setup::pointing(study));
+    format!("{engine} {place:?} {air:?} {sky_per_ns:?} {pointing:?} {kinds:?}")
 }

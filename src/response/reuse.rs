@@ -3,6 +3,7 @@
 use std::path::Path;
 
 use super::error::TableError;
+use super::pad::PadKey;
 use super::sample::Sample;
 use super::scene::{Column, Scene};
 use super::store;
@@ -63,7 +64,38 @@ pub fn samples(
     } else if !added.is_empty() {
         store::extend(folder, stamp, &added)?;
     }
-    throws.iter().map(|(throw, repetitions)| select(&table, scene, throw, *repetitions)).collect()
+    let pads = scene.pads();
+    throws.iter().map(|(throw, repetitions)| select(&table, &pads, throw, *repetitions)).collect()
+}
+
+/// The samples of some throws on some pads from a stored table alone; nothing if there is no table
+/// or it lacks pads, words or primaries. What is there is not simulated again to compare.
+///
+/// # Errors
+/// [`TableError`]: a table that is damaged, foreign or outdated is refused.
+pub fn stored(
+    folder: &Path,
+    stamp: &TableStamp,
+    pads: &[PadKey],
+    throws: &[(Throw, usize)],
+) -> Result<Option<Vec<Sample>>, TableError> {
+    let table = match store::read(folder, Some(stamp)) {
+        Ok(table) => table,
+        Err(TableError::Missing { .. }) => return Ok(None),
+        Err(error) => return Err(error),
+    };
+    let holds = |(throw, repetitions): &(Throw, usize)| {
+        let sample = table.samples.iter().find(|sample| sample.throw == *throw);
+        sample.is_some_and(|sample| {
+            sample.words.len() >= throw.word_count() * repetitions
+                && pads.iter().all(|pad| sample.column(pad).is_some())
+        })
+    };
+    if !throws.iter().all(holds) {
+        return Ok(None);
+    }
+    let found = throws.iter().map(|(throw, times)| select(&table, pads, throw, *times));
+    found.collect::<Result<_, _>>().map(Some)
 }
 
 /// Simulates the first word of a stored sample again, on the columns that are in both.
@@ -120,7 +152,7 @@ fn missing(
 /// The columns and words asked for, with the exposures of that many repetitions.
 fn select(
     table: &ResponseTable,
-    scene: &Scene<'_>,
+    pads: &[PadKey],
     throw: &Throw,
     repetitions: usize,
 ) -> Result<Sample, TableError> {
@@ -130,7 +162,6 @@ fn select(
         .iter()
         .find(|sample| sample.throw == *throw)
         .ok_or_else(|| lacks("there are none".into()))?;
-    let pads = scene.pads();
     let places: Vec<usize> = pads
         .iter()
         .map(|pad| sample.column(pad).ok_or_else(|| lacks(format!("no column {pad:?}"))))
@@ -152,6 +183,6 @@ fn select(
         words,
         images: images.collect(),
         margins: places.iter().map(|&at| sample.margins[at][..events].to_vec()).collect(),
-        pads,
+        pads: pads.to_vec(),
     })
 }
