@@ -49,6 +49,7 @@ fn sample(pads: usize) -> Sample {
                         width_deg: stream.uniform() as f32,
                         orientation_rad: stream.uniform() as f32,
                         edge_fraction: 0.0,
+                        time_slope_ns_deg: 1.5,
                     },
                 };
                 cells.extend(CellImage::of(event, &record));

@@ -63,7 +63,7 @@ fn kind(section: &Section<'_>, files: &mut Companions) -> Result<TelescopeKind, 
             limits(0.0, 100.0, "photoelectrons, RMS"),
             0.0,
         )?,
-        crosstalk: section.number_or("crosstalk", limits(0.0, 0.6, "probability"), 0.0)?,
+        crosstalk: section.number_or("crosstalk", limits(0.0, 0.4, "probability"), 0.0)?,
         afterpulsing: section.number_or("afterpulsing", limits(0.0, 0.5, "probability"), 0.0)?,
         afterpulse_pe: section.number_or(
             "afterpulse_pe",

@@ -65,7 +65,8 @@ pub struct TelescopeKind {
     /// Probability that a discharge sets off at least one more at the same time (optical crosstalk
     /// of silicon sensors).
     pub crosstalk: f64,
-    /// Probability that a photoelectron is followed by an afterpulse, long after it.
+    /// Probability that a photoelectron is followed by an afterpulse, long after it: afterpulses of
+    /// sky photoelectrons are noise, those of a shower come too late for its trigger.
     pub afterpulsing: f64,
     /// Mean height of an afterpulse, photoelectrons; heights fall exponentially.
     pub afterpulse_pe: f64,
@@ -117,7 +118,7 @@ impl TelescopeKind {
             if fits { Ok(()) } else { Err(KindError { field, value, allowed }) }
         };
         most("electronic_noise_pe", self.electronic_noise_pe, 100.0, "0 to 100")?;
-        most("crosstalk", self.crosstalk, 0.6, "0 to 0.6")?;
+        most("crosstalk", self.crosstalk, 0.4, "0 to 0.4")?;
         most("afterpulsing", self.afterpulsing, 0.5, "0 to 0.5")?;
         positive("afterpulse_pe", self.afterpulse_pe, 20.0, "above 0, at most 20")?;
         let (field, value) = match self.threshold {
@@ -130,6 +131,19 @@ impl TelescopeKind {
             return Err(KindError { field: "cost", value: self.cost, allowed: "0 or more" });
         }
         Ok(self)
+    }
+
+    /// Mean number lambda of further discharges that one sets off directly: crosstalk is the
+    /// probability of at least one, 1 - exp(-lambda).
+    ///
+    /// Each of them may set off more, so that the total of one photoelectron follows Borel's law, of
+    /// mean 1 / (1 - lambda) and variance lambda / (1 - lambda)^3; that of a Poisson number of
+    /// photoelectrons is the generalised Poisson law.
+    ///
+    /// # Source
+    /// Vinogradov 2012, Nucl. Instrum. Methods A 695, 247 (from memory).
+    pub fn further_discharges(&self) -> f64 {
+        -(1.0 - self.crosstalk).ln()
     }
 
     /// Net collecting area, m2.

@@ -23,5 +23,5 @@ pub use kind::{KindError, TelescopeKind, Threshold};
 pub use noise::Noise;
 pub use readout::{ImageRecord, Quantum, Readout};
 pub use sky::{Brightness, NightSky};
-pub use summary::ImageSummary;
+pub use summary::{ImagePoint, ImageSummary};
 pub use trigger::Topology;

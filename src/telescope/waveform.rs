@@ -1,12 +1,13 @@
 //! The slow reference: full waveforms of every pixel, discriminators and their overlaps.
 //!
-//! It shares the camera and the pulse shape with the fast readout and nothing else, and exists to
+//! It shares the camera, the pulse shape and the law of discharges with the fast readout and nothing else, and exists to
 //! measure that one's bias.
 
 use crate::numerics::Stream;
 
 use super::camera::Camera;
 use super::kind::TelescopeKind;
+use super::noise::discharges;
 use super::trigger::{Topology, compact_groups};
 
 /// Time between samples, ns.
@@ -31,7 +32,10 @@ impl<'a> Waveforms<'a> {
     /// Fills every pixel with sky noise of a rate and removes its mean.
     pub fn fill_with_noise(&mut self, sky_per_ns: f64, stream: &mut Stream) {
         let sigma = self.kind.pulse_sigma_ns();
-        let mean = sky_per_ns * sigma * core::f64::consts::TAU.sqrt();
+        let (spread, further) = (self.kind.pulse_spread, self.kind.further_discharges());
+        let (after, after_pe) = (self.kind.afterpulsing, self.kind.afterpulse_pe);
+        let pulse = 1.0 / (1.0 - further) + after * after_pe;
+        let mean = sky_per_ns * sigma * core::f64::consts::TAU.sqrt() * pulse;
         self.heights.fill(-mean as f32);
         let margin = 6.0 * sigma;
         let end = self.samples as f64 * f64::from(SAMPLE_NS) + margin;
@@ -42,9 +46,30 @@ impl<'a> Waveforms<'a> {
                 if time > end {
                     break;
                 }
-                let gain = (1.0 + self.kind.pulse_spread * stream.normal()).max(0.0);
+                let count = if further > 0.0 { discharges(further, stream) } else { 1.0 };
+                let gain = (count + spread * count.sqrt() * stream.normal()).max(0.0);
                 self.add_pulse(pixel, time as f32, gain as f32);
+                if after > 0.0 && stream.uniform() < after {
+                    // Long after its photoelectron: anywhere.
+                    let later = -margin + (end + margin) * stream.uniform();
+                    self.add_pulse(pixel, later as f32, (after_pe * stream.exponential()) as f32);
+                }
             }
+            if self.kind.electronic_noise_pe > 0.0 {
+                self.add_electronics(pixel, end, margin, stream);
+            }
+        }
+    }
+
+    /// White noise through the pulse's shape: gaussian charges every ns, denser than the pulse is
+    /// long.
+    fn add_electronics(&mut self, pixel: usize, end: f64, margin: f64, stream: &mut Stream) {
+        let square = self.kind.pulse_sigma_ns() * core::f64::consts::PI.sqrt();
+        let charge = self.kind.electronic_noise_pe / square.sqrt();
+        let mut time = -margin;
+        while time < end {
+            self.add_pulse(pixel, time as f32, (charge * stream.normal()) as f32);
+            time += 1.0;
         }
     }
 

@@ -92,7 +92,7 @@ fn verify_wrong_numbers_are_named_with_their_place_and_range() {
             "write one of",
         ),
         ("clip", "connected_pixels = 3", "patch_clip_pe = 0", "from 0.1 to 1000"),
-        ("cross", "connected_pixels = 3", "crosstalk = 0.9\nconnected_pixels = 3", "from 0 to 0.6"),
+        ("cross", "connected_pixels = 3", "crosstalk = 0.9\nconnected_pixels = 3", "from 0 to 0.4"),
         ("zenith", "zenith_deg = 20", "zenith_deg = 85", "from 0 to 70 (degrees)"),
     ];
     for (name, piece, replacement, part) in cases {

@@ -60,6 +60,7 @@ fn part(throw: &Throw, numbers: std::ops::Range<usize>, pads: &[PadKey]) -> Samp
                         width_deg: 0.1,
                         orientation_rad: stream.uniform() as f32,
                         edge_fraction: 0.0,
+                        time_slope_ns_deg: 1.5,
                     },
                 };
                 cells.extend(CellImage::of(event as u32, &record));
@@ -313,7 +314,7 @@ fn verify_foreign_and_outdated_tables_are_refused_with_the_reason() {
         std::fs::write(folder.0.join(MANIFEST), list.replacen(from, to, 1)).unwrap();
         store::read(&folder.0, None).unwrap_err()
     };
-    let older = swap("\"format_version\": 1", "\"format_version\": 0");
+    let older = swap("\"format_version\": 2", "\"format_version\": 0");
     assert!(matches!(older, TableError::Outdated { .. }), "{older}");
     let stranger = swap("nightpool response table", "a table of somebody else");
     assert!(matches!(stranger, TableError::Foreign { .. }), "{stranger}");

@@ -63,7 +63,7 @@ pub fn margins(sample: &Sample) -> PolarsResult<DataFrame> {
 }
 
 /// Fields of an image in the order of its columns.
-const IMAGE_FIELDS: [&str; 9] = [
+const IMAGE_FIELDS: [&str; 10] = [
     "photoelectrons",
     "time_ns",
     "size_pe",
@@ -73,13 +73,14 @@ const IMAGE_FIELDS: [&str; 9] = [
     "width_deg",
     "orientation_rad",
     "edge_fraction",
+    "time_slope_ns_deg",
 ];
 
 /// Images.
 pub fn images(sample: &Sample) -> PolarsResult<DataFrame> {
     let first = (sample.first_word * EVENTS_PER_WORD) as u64;
     let (mut pads, mut events) = (Vec::new(), Vec::new());
-    let mut fields: [Vec<f32>; 9] = Default::default();
+    let mut fields: [Vec<f32>; 10] = Default::default();
     for (pad, cells) in sample.images.iter().enumerate() {
         for cell in cells {
             pads.push(pad as u32);
@@ -88,8 +89,9 @@ pub fn images(sample: &Sample) -> PolarsResult<DataFrame> {
             let [x, y] = summary.centroid_deg;
             let ImageSummary { size_pe, length_deg, width_deg, .. } = summary;
             let (turn, edge) = (summary.orientation_rad, summary.edge_fraction);
+            let slope = summary.time_slope_ns_deg;
             let values =
-                [photoelectrons, time_ns, size_pe, x, y, length_deg, width_deg, turn, edge];
+                [photoelectrons, time_ns, size_pe, x, y, length_deg, width_deg, turn, edge, slope];
             for (field, value) in fields.iter_mut().zip(values) {
                 field.push(value);
             }
@@ -188,6 +190,7 @@ pub fn images_of(
             width_deg: at(6),
             orientation_rad: at(7),
             edge_fraction: at(8),
+            time_slope_ns_deg: at(9),
         };
         let event = (event - first) as u32;
         column.push(CellImage { event, photoelectrons: at(0), time_ns: at(1), summary });

@@ -15,7 +15,7 @@ pub const MANIFEST: &str = "table.json";
 /// What a list of ours says it is.
 pub const FORMAT: &str = "nightpool response table";
 /// Version of the files' layout.
-pub const FORMAT_VERSION: u32 = 1;
+pub const FORMAT_VERSION: u32 = 2;
 /// Version of this program; cells of another version are not used.
 pub const PROGRAM_VERSION: &str = env!("CARGO_PKG_VERSION");
 
