@@ -67,15 +67,15 @@ fn sorted(telescopes: impl Iterator<Item = (usize, [i64; 3])>) -> Key {
     key
 }
 
-/// Leaves the first of every group of equal candidates (same condition, same key).
-pub fn distinct(candidates: Vec<Candidate>, up_to_symmetry: bool) -> Vec<Candidate> {
-    let mut seen = std::collections::HashSet::new();
-    let mut kept = candidates;
-    kept.retain(|candidate| {
+/// For each candidate the first earlier one that is the same (same condition, same key), if any.
+pub fn repeated(candidates: &[Candidate], up_to_symmetry: bool) -> Vec<Option<usize>> {
+    let mut seen = std::collections::HashMap::new();
+    let found = candidates.iter().enumerate().map(|(index, candidate)| {
         let key = if up_to_symmetry { candidate.symmetric_key() } else { candidate.key() };
-        seen.insert((key, candidate.condition.clone()))
+        let first = *seen.entry((key, candidate.condition.clone())).or_insert(index);
+        (first != index).then_some(first)
     });
-    kept
+    found.collect()
 }
 
 #[cfg(test)]
@@ -97,6 +97,6 @@ mod tests {
         let other = make(&[[0.0, 0.0], [100.0, 0.0], [0.0, 41.0]]);
         assert_eq!(original.symmetric_key(), turned.symmetric_key());
         assert_ne!(original.key(), turned.key());
-        assert_eq!(distinct(vec![original, turned, other], true).len(), 2);
+        assert_eq!(repeated(&[original, turned, other], true), [None, Some(0), None]);
     }
 }

@@ -257,6 +257,9 @@ fn warnings(planned: &Planned<'_>, scored: &[Scored], ranked: &[Compared]) -> Ve
     let mut warnings = Vec::new();
     let Some(best) = ranked.first() else { return warnings };
     let leader = &scored[best.layout];
+    for [name, first] in &planned.study.left_out {
+        warnings.push(format!("{name} is the same layout as {first} and is left out"));
+    }
     let edges = [(&planned.gamma, &leader.gamma_words, leader.gamma)].into_iter().chain(
         planned.backgrounds.iter().zip(&leader.backgrounds).map(|(w, (_, r, e))| (w, r, *e)),
     );

@@ -1,8 +1,10 @@
 //! Candidate layouts: explicit positions and patterns over spacings.
 
+use crate::layout::candidate::repeated;
 use crate::layout::cost::KindPrice;
 use crate::layout::generator::Pattern;
 use crate::layout::geography::from_geojson;
+use crate::layout::{Candidate, Condition, Member};
 use crate::telescope::TelescopeKind;
 
 use super::error::StudyError;
@@ -65,6 +67,30 @@ pub(super) fn layouts(
         return Err(root.wrong("layout", problem));
     }
     Ok(layouts)
+}
+
+/// Layouts without those that are the same as an earlier one, and the names of such pairs. For
+/// vertical showers without a magnetic field copies that are moved, turned or mirrored are the
+/// same. Places of a scan stay.
+pub(super) fn distinct(
+    layouts: Vec<Layout>,
+    up_to_symmetry: bool,
+) -> (Vec<Layout>, Vec<[String; 2]>) {
+    let candidate = |layout: &Layout| {
+        let member = |placed: &Placed| Member { position_m: placed.enu_m, kind: placed.kind };
+        let members = layout.telescopes.iter().map(member).collect();
+        let condition = Condition::any(layout.condition);
+        Candidate { name: layout.name.clone(), members, condition }
+    };
+    let candidates: Vec<Candidate> = layouts.iter().map(candidate).collect();
+    let (mut kept, mut left_out) = (Vec::new(), Vec::new());
+    for (layout, first) in layouts.into_iter().zip(repeated(&candidates, up_to_symmetry)) {
+        match first.filter(|_| layout.scan.is_none()) {
+            Some(first) => left_out.push([layout.name, candidates[first].name.clone()]),
+            None => kept.push(layout),
+        }
+    }
+    (kept, left_out)
 }
 
 /// Reads layouts of a GeoJSON file of points with the properties `layout`, `kind` and `condition`:
@@ -167,7 +193,7 @@ fn family(
     let name = section.text("name")?;
     let kind = kind_index(section, "telescope", kinds)?;
     let shape = pattern(section)?;
-    let count = section.count("telescopes", 1, MOST_TELESCOPES as u64)? as usize;
+    let counts = counts(section)?;
     let range = limits(1.0, 5_000.0, "m");
     let missing = || section.wrong_section("no spacing; write spacings_m = [...], in metres");
     let spacings = section.numbers_if_any("spacings_m", range)?.ok_or_else(missing)?;
@@ -177,7 +203,7 @@ fn family(
     let turn = section.number_or("turn_deg", limits(-360.0, 360.0, "degrees"), 0.0)?.to_radians();
     let centre = section.tuple_if_any::<2>("centre_enu_m", limits(-2e4, 2e4, "m"))?;
     let centre = centre.unwrap_or_default();
-    let (condition, window_ns) = condition(section, count + built.len())?;
+    let (condition, window_ns) = condition(section, counts[0] + built.len())?;
     let areas = scanned_areas(section)?;
     let scan = areas.len().max(1) * spacings.len() > 1;
     let of_kind = |area: Option<f64>| match area {
@@ -189,7 +215,11 @@ fn family(
     };
     let areas: Vec<Option<f64>> =
         if areas.is_empty() { vec![None] } else { areas.into_iter().map(Some).collect() };
-    for (area, spacing) in areas.iter().flat_map(|a| spacings.iter().map(move |s| (*a, *s))) {
+    let places = areas.iter().flat_map(|a| spacings.iter().map(move |s| (*a, *s)));
+    let several = counts.len() > 1;
+    for (count, (area, spacing)) in
+        counts.iter().flat_map(|&count| places.clone().map(move |place| (count, place)))
+    {
         let kind = of_kind(area);
         let mut telescopes = built.to_vec();
         for [x, y] in shape.positions_m(count, spacing) {
@@ -203,16 +233,34 @@ fn family(
             telescopes.push(placed);
         }
         let mirror = area.map_or(String::new(), |area| format!(" {area} m2"));
+        let number = if several { format!(" of {count}") } else { String::new() };
         let scan = scan.then(|| Scan {
-            family: name.to_owned(),
+            family: format!("{name}{number}"),
             mirror_area_m2: kinds[kind].mirror_area_m2,
             spacing_m: spacing,
         });
-        let name = format!("{name}{mirror} {spacing} m");
+        let name = format!("{name}{number}{mirror} {spacing} m");
         let line = section.line();
         admit(section, Layout { name, telescopes, condition, window_ns, scan, line }, layouts)?;
     }
     Ok(())
+}
+
+/// Numbers of telescopes, rising: one, or those of a scan.
+fn counts(section: &Section<'_>) -> Result<Vec<usize>, StudyError> {
+    const KEY: &str = "telescope_numbers";
+    let most = MOST_TELESCOPES as f64;
+    let Some(numbers) = section.numbers_if_any(KEY, limits(1.0, most, "telescopes"))? else {
+        return Ok(vec![section.count("telescopes", 1, MOST_TELESCOPES as u64)? as usize]);
+    };
+    if section.has("telescopes") {
+        return Err(section.wrong(KEY, "write either telescopes or telescope_numbers"));
+    }
+    let rising = numbers.windows(2).all(|pair| pair[0] < pair[1]);
+    if numbers.is_empty() || !rising || numbers.iter().any(|number| number.fract() != 0.0) {
+        return Err(section.wrong(KEY, "write rising whole numbers, such as [3, 4, 5]"));
+    }
+    Ok(numbers.into_iter().map(|number| number as usize).collect())
 }
 
 fn scanned_areas(section: &Section<'_>) -> Result<Vec<f64>, StudyError> {

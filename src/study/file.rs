@@ -120,6 +120,8 @@ fn resolved(
     let tariff = costs::tariff(root.section_if_any("costs")?, &kinds, &site, &built)?;
     let recording = costs::recording(root.section_if_any("recording")?)?;
     let layouts = candidates::layouts(&root, (&kinds, &site, &built), companions)?;
+    let alike = pointing.zenith_deg == 0.0 && site.field_ut.is_none();
+    let (layouts, left_out) = candidates::distinct(layouts, alike);
     let sources = sky::sources(&root)?;
     let backgrounds = sky::backgrounds(&root)?;
     let budget = budget(root.section("budget")?)?;
@@ -144,6 +146,7 @@ fn resolved(
         tariff,
         recording,
         layouts,
+        left_out,
         pointing,
         sources,
         backgrounds,

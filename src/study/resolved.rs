@@ -44,6 +44,8 @@ pub struct Study {
     pub recording: Recording,
     /// Candidate layouts, explicit and generated, in the order of the file.
     pub layouts: Vec<Layout>,
+    /// Names of layouts that are left out, each with that of the layout it equals.
+    pub left_out: Vec<[String; 2]>,
     /// Where the telescopes look.
     pub pointing: Pointing,
     /// Gamma-ray sources; the first is the reference.

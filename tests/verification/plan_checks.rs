@@ -112,3 +112,31 @@ fn verify_a_scan_of_mirror_areas_is_a_kind_each() {
         assert!(((a[0] - b[0]).hypot(a[1] - b[1]) - scan.spacing_m).abs() < 1e-9);
     }
 }
+
+#[test]
+fn verify_numbers_are_scanned_and_the_same_layout_is_counted_once() {
+    let family = "[[layout_family]]\nname = \"pair\"\ntelescope = \"broad\"\npattern = \"line\"\n\
+                  telescopes = 2";
+    assert!(TINY.contains(family));
+    let numbers = family.replace("telescopes = 2", "telescope_numbers = [2, 3]");
+    let again = "\n[[layout]]\nname = \"by hand\"\n[[layout.stand]]\ntelescope = \"broad\"\n\
+                 at_enu_m = [[35, 0], [-35, 0]]\n\n[pointing]";
+    let text = TINY.replace(family, &numbers).replace("[pointing]", again);
+    let study = Study::parse(Path::new("numbers.toml"), &text).unwrap();
+    let names: Vec<&str> = study.layouts.iter().map(|layout| layout.name.as_str()).collect();
+    let line = ["pair of 2 70 m", "pair of 2 110 m", "pair of 3 70 m", "pair of 3 110 m"];
+    assert_eq!(names[..2], ["mixed", "by hand"]);
+    assert_eq!(names[2..], line);
+    // Without a scan the one by hand and the one of the family are one.
+    let plain = family.replace("telescopes = 2", "telescopes = 2\nturn_deg = 0");
+    let text = TINY.replace(family, &plain).replace("[70, 110]", "[70]");
+    let study = Study::parse(Path::new("twice.toml"), &text.replace("[pointing]", again)).unwrap();
+    assert_eq!(study.left_out, [["pair 70 m".to_owned(), "by hand".to_owned()]]);
+    assert_eq!(study.layouts.len(), 2);
+    // Turned by a quarter it is another one under a tilted pointing and the same under a vertical.
+    let text = text.replace("turn_deg = 0", "turn_deg = 90").replace("[pointing]", again);
+    let tilted = Study::parse(Path::new("turned.toml"), &text).unwrap();
+    let upright = text.replace("zenith_deg = 20", "zenith_deg = 0");
+    let upright = Study::parse(Path::new("upright.toml"), &upright).unwrap();
+    assert_eq!((tilted.layouts.len(), upright.layouts.len()), (3, 2));
+}
