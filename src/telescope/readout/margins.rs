@@ -105,29 +105,53 @@ impl Readout<'_> {
 
     /// The largest sum of clipped heights over a pixel and its neighbours, at the peak time of one
     /// of its lit pixels.
-    pub(super) fn patch_margin(&self, clip_pe: f32, stream: &mut Stream) -> f32 {
+    ///
+    /// No sum exceeds that of the pixels' own clipped peaks (of the times tried): patches are tried from the highest such
+    /// sum down, until even a three sigma gain by slopes cannot lift the next above the best.
+    pub(super) fn patch_margin(&mut self, clip_pe: f32, stream: &mut Stream) -> f32 {
         let kind = self.kind;
-        let mut margin = 0.0_f32;
+        let mut patches = core::mem::take(&mut self.raised);
+        patches.clear();
         for &centre in &self.touched {
             let near = kind.camera.neighbours(usize::from(centre));
             let all = || near.iter().copied().chain([centre]).map(usize::from);
-            if all().any(|p| self.mark[p] == EMPTY) {
-                continue;
-            }
-            let mut best = f32::NEG_INFINITY;
-            for moment in all().filter(|&p| self.mark[p] == LIT).map(|p| self.peak_ns[p]) {
-                let height = |p: usize| {
-                    let light = self.per_pixel[p].as_slice();
-                    self.noise[p] + pulse_sum(light, moment, self.sigma_ns)
-                };
-                best = best.max(all().map(|p| height(p).min(clip_pe)).sum());
-            }
-            if best > 0.0 {
-                let free = all().filter(|&p| self.height[p] < clip_pe).count();
-                margin = margin.max(best + self.slope_gain(best, free as f32, stream));
+            if all().all(|p| self.mark[p] != EMPTY) {
+                let most = all().map(|p| self.height[p].min(clip_pe)).sum::<f32>();
+                patches.push((most, f32::from(centre)));
             }
         }
+        patches.sort_unstable_by(|a, b| b.0.total_cmp(&a.0).then(a.1.total_cmp(&b.1)));
+        let mut margin = 0.0_f32;
+        for &(most, centre) in &patches {
+            let gain = 7.0 * self.noise_rms * self.noise_rms * 9.0 / (4.0 * most.max(1e-3));
+            if most <= 0.0 || most + gain < margin {
+                break;
+            }
+            let best = self.patch_sum(centre as u16, clip_pe);
+            if best > 0.0 {
+                let near = kind.camera.neighbours(centre as usize).iter().map(|&p| usize::from(p));
+                let free = near.chain([centre as usize]).filter(|&p| self.height[p] < clip_pe);
+                let free = free.count() as f32;
+                margin = margin.max(best + self.slope_gain(best, free, stream));
+            }
+        }
+        self.raised = patches;
         margin
+    }
+
+    /// The largest clipped sum of one patch at the peak time of one of its lit pixels.
+    fn patch_sum(&self, centre: u16, clip_pe: f32) -> f32 {
+        let near = self.kind.camera.neighbours(usize::from(centre));
+        let all = || near.iter().copied().chain([centre]).map(usize::from);
+        let mut best = f32::NEG_INFINITY;
+        for moment in all().filter(|&p| self.mark[p] == LIT).map(|p| self.peak_ns[p]) {
+            let height = |p: usize| {
+                let light = self.per_pixel[p].as_slice();
+                self.noise[p] + pulse_sum(light, moment, self.sigma_ns)
+            };
+            best = best.max(all().map(|p| height(p).min(clip_pe)).sum());
+        }
+        best
     }
 
     /// What a peak of `height` gains by noise that slopes under it: for a gaussian top of curvature
