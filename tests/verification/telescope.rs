@@ -41,8 +41,8 @@ fn seven() -> TelescopeKind {
     kind(PixelShape::Hexagonal, 0.2, 0.62)
 }
 
-/// One long run of seven pixels serves all rates: pixel crossings over more than four decades and
-/// the three topologies down to where 40 triggers remain.
+/// One long run of seven pixels serves all rates: pixel crossings, connected pairs, majorities and
+/// patch sums over more than four decades each, compact triples over three.
 #[test]
 fn verify_accidental_rates_against_waveforms() {
     let kind = seven();
@@ -78,8 +78,14 @@ fn verify_accidental_rates_against_waveforms() {
         assert!((ratio - 1.0).abs() < allowed, "pixel at {threshold}: {ratio} of {measured} Hz");
     }
     assert!(pixel[0] > 10_000 * pixel[6] && enough(pixel[6]), "four decades: {pixel:?}");
+    // Down to three triggers, within three standard errors: over four decades each.
+    let some = |count: usize| count >= 3;
+    for counts in [groups[0].as_slice(), &groups[1], &patch] {
+        let least = counts.iter().copied().filter(|count| some(*count)).min().unwrap_or(0);
+        assert!(counts[0] > 10_000 * least, "four decades: {counts:?}");
+    }
     for (topology, counts) in topologies.iter().zip(&groups) {
-        for (&count, &threshold) in counts.iter().zip(&thresholds).filter(|(c, _)| enough(**c)) {
+        for (&count, &threshold) in counts.iter().zip(&thresholds).filter(|(c, _)| some(**c)) {
             let threshold = f64::from(threshold);
             let expected = topology_rate_hz(&kind, *topology, sky, threshold);
             let ratio = expected * seconds / count as f64;
@@ -92,7 +98,7 @@ fn verify_accidental_rates_against_waveforms() {
             assert!(ratio < most || busy > 0.05, "{topology:?} at {threshold}: {ratio} > {most}");
         }
     }
-    for (&count, &threshold) in patch.iter().zip(&sums).filter(|(c, _)| enough(**c)) {
+    for (&count, &threshold) in patch.iter().zip(&sums).filter(|(c, _)| some(**c)) {
         let topology = Topology::PatchSum(3.0);
         let expected = topology_rate_hz(&kind, topology, sky, f64::from(threshold));
         let ratio = expected * seconds / count as f64;
