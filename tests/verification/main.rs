@@ -17,3 +17,4 @@ mod response_scene;
 mod scan;
 mod search_command;
 mod telescope;
+mod telescope_noise;
