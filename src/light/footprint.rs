@@ -1,8 +1,7 @@
 //! The light pool of one electromagnetic shower, and photoelectrons drawn from it.
 
 use core::f64::consts::FRAC_PI_2;
-
-use rayon::prelude::*;
+use std::sync::OnceLock;
 
 use crate::atmosphere::Atmosphere;
 use crate::consts::SPEED_OF_LIGHT_M_NS;
@@ -36,10 +35,12 @@ pub struct LightModel {
     /// The slabs.
     pub column: Column,
     reference: AxisPath,
+    field_ut: f64,
     sectors: usize,
-    fractions: Vec<f64>,
+    emitters: EmitterTable,
     ages: Vec<f64>,
-    nodes: Vec<Node>,
+    /// Made when first used, each from its own random stream: by energy, slab, age.
+    nodes: Vec<OnceLock<Node>>,
     worth: Vec<Vec<SlabWorth>>,
     disc_radii_m: Vec<f64>,
 }
@@ -67,25 +68,14 @@ pub struct Arrival {
 }
 
 impl LightModel {
-    /// Builds the tables; one to two seconds of processor time.
+    /// Prepares the tables; their parts are made when showers first need them, one to two seconds
+    /// of processor time in all.
     pub fn new(settings: &LightSettings<'_>, detectors: &[Detector<'_>]) -> Self {
         let column = Column::new(settings.atmosphere, settings.observer_altitude_m, settings.slabs);
         let reference = column.axis(settings.zenith_rad);
         let table = settings.emitters;
-        let ages: Vec<f64> = table.nodes.iter().map(|node| node.age).collect();
-        let nodes = (0..column.slabs.len() * ages.len())
-            .into_par_iter()
-            .map(|cell| {
-                let (slab, age) = (cell / ages.len(), cell % ages.len());
-                let geometry = Geometry {
-                    distance_m: reference.steps[slab].distance_m,
-                    density_kg_m3: column.slabs[slab].density_kg_m3,
-                    refractivity: column.slabs[slab].refractivity,
-                    field_ut: settings.transverse_field_ut,
-                };
-                Node::new(&table.nodes[age], geometry, &[slab as u64, age as u64])
-            })
-            .collect();
+        let ages = table.ages();
+        let nodes = (0..table.nodes.len() * column.slabs.len()).map(|_| OnceLock::new()).collect();
         let worth = detectors
             .iter()
             .map(|detector| {
@@ -94,9 +84,9 @@ impl LightModel {
             })
             .collect();
         let sectors = if settings.transverse_field_ut > 0.0 { FIELD_SECTORS } else { 1 };
-        let fractions = table.nodes.iter().map(|node| node.fraction).collect();
+        let (emitters, field_ut) = (table.clone(), settings.transverse_field_ut);
         let disc_radii_m = vec![1.0; detectors.len()];
-        Self { column, reference, sectors, fractions, ages, nodes, worth, disc_radii_m }
+        Self { column, reference, field_ut, sectors, emitters, ages, nodes, worth, disc_radii_m }
     }
 
     /// The same with the radii of the collecting discs, by detector: what a muon close by sees.
@@ -129,14 +119,15 @@ impl LightModel {
 
     /// The light pool of one shower along `axis`.
     pub fn footprint(&self, axis: &AxisPath, shower: &GaisserHillas) -> Footprint {
-        let slices = self.slices(axis, shower);
+        let energy = self.energy_of(shower);
+        let slices = self.slices(axis, shower, energy);
         let cells = self.sectors * grid::BINS;
         let mut density = vec![0.0_f32; self.worth.len() * cells];
         let mut moment = vec![0.0_f32; cells];
         let secant_ratio = self.secant_ratio(axis);
         let mut quanta = vec![[0.0_f32; 2]; self.worth.len() * slices.len()];
         for (place, slice) in slices.iter().enumerate() {
-            let nodes = [self.node(slice.slab, slice.age), self.node(slice.slab, slice.age + 1)];
+            let nodes = [0, 1].map(|next| self.node(energy, slice.slab, slice.age + next));
             for (detector, worth) in self.worth.iter().enumerate() {
                 let value = worth[slice.slab].at(secant_ratio) as f32;
                 let weights = slice.tracks_m.map(|track| track * value);
@@ -155,13 +146,15 @@ impl LightModel {
         let mut tracks = vec![0.0_f32; cells];
         for slice in &slices {
             for (offset, weight) in slice.tracks_m.into_iter().enumerate() {
-                add(&mut tracks, &self.node(slice.slab, slice.age + offset).density_m2, weight);
+                let node = self.node(energy, slice.slab, slice.age + offset);
+                add(&mut tracks, &node.density_m2, weight);
             }
         }
         for (value, total) in moment.iter_mut().zip(&tracks) {
             *value = if *total > 0.0 { *value / *total } else { 0.0 };
         }
-        Footprint { slices, quanta, density, inverse_distance: moment, stretch: self.stretch(axis) }
+        let stretch = self.stretch(axis);
+        Footprint { energy, slices, quanta, density, inverse_distance: moment, stretch }
     }
 
     /// Counted quanta per m2 across the axis at a pad.
@@ -204,7 +197,7 @@ impl LightModel {
         for (slice, weights) in footprint.slices.iter().zip(quanta) {
             let bracket = place_in(place, axis.steps[slice.slab].distance_m, pad);
             for (offset, weight) in weights.iter().enumerate() {
-                let node = self.node(slice.slab, slice.age + offset);
+                let node = self.node(footprint.energy, slice.slab, slice.age + offset);
                 let density = bracket.map_or(0.0, |at| self.read(&node.density_m2, sector, at));
                 total += f64::from(*weight) * density;
                 scratch.push(total);
@@ -218,7 +211,7 @@ impl LightModel {
             let target = total * stream.uniform();
             let chosen = scratch.partition_point(|sum| *sum <= target).min(scratch.len() - 1);
             let slice = &footprint.slices[chosen / 2];
-            let node = self.node(slice.slab, slice.age + chosen % 2);
+            let node = self.node(footprint.energy, slice.slab, slice.age + chosen % 2);
             let bracket = place_in(place, axis.steps[slice.slab].distance_m, pad);
             let Some(at) = bracket else { continue };
             take(self.arrival(node, slice.slab, at, (sector, handed), axis, pad, stream));
@@ -256,20 +249,23 @@ impl LightModel {
         }
     }
 
-    fn slices(&self, axis: &AxisPath, shower: &GaisserHillas) -> Vec<Slice> {
+    fn slices(&self, axis: &AxisPath, shower: &GaisserHillas, energy: usize) -> Vec<Slice> {
         let mut slices = Vec::with_capacity(axis.steps.len());
         let largest = shower.size(shower.max_g_cm2);
         for (slab, step) in axis.steps.iter().enumerate() {
             let size = mean_size(shower, step.depth_g_cm2, step.thickness_g_cm2);
-            if size < 1e-5 * largest {
+            if size <= 1e-5 * largest {
                 continue;
             }
             let (age, share) = self.age_bracket(shower.age(step.depth_g_cm2));
             let track_m =
                 size * step.thickness_g_cm2 * 10.0 / self.column.slabs[slab].density_kg_m3;
+            let emitters = &self.emitters.nodes[energy * self.ages.len()..];
+            let fraction =
+                |age: usize| if shower.is_shape() { 1.0 } else { emitters[age].fraction };
             let tracks_m = [
-                (track_m * (1.0 - share) * self.fractions[age]) as f32,
-                (track_m * share * self.fractions[age + 1]) as f32,
+                (track_m * (1.0 - share) * fraction(age)) as f32,
+                (track_m * share * fraction(age + 1)) as f32,
             ];
             slices.push(Slice { slab, age, tracks_m });
         }
@@ -285,8 +281,32 @@ impl LightModel {
         (low, share.clamp(0.0, 1.0))
     }
 
-    fn node(&self, slab: usize, age: usize) -> &Node {
-        &self.nodes[slab * self.ages.len() + age]
+    /// The node of an energy, a slab and an age.
+    fn node(&self, energy: usize, slab: usize, age: usize) -> &Node {
+        let place = (energy * self.column.slabs.len() + slab) * self.ages.len() + age;
+        self.nodes[place].get_or_init(|| {
+            let geometry = Geometry {
+                distance_m: self.reference.steps[slab].distance_m,
+                density_kg_m3: self.column.slabs[slab].density_kg_m3,
+                refractivity: self.column.slabs[slab].refractivity,
+                field_ut: self.field_ut,
+            };
+            let emitters = &self.emitters.nodes[energy * self.ages.len() + age];
+            Node::new(emitters, geometry, &[slab as u64, age as u64])
+        })
+    }
+
+    /// Which of the tabulated energies gives a shower its emitters: one of the two around, in
+    /// proportion to nearness in ln E.
+    fn energy_of(&self, shower: &GaisserHillas) -> usize {
+        let energies = &self.emitters.energies_gev;
+        let upper = energies.partition_point(|energy| *energy < shower.energy_gev);
+        if upper == 0 || upper == energies.len() {
+            return upper.saturating_sub(1);
+        }
+        let (low, high) = (energies[upper - 1], energies[upper]);
+        let share = (shower.energy_gev / low).ln() / (high / low).ln();
+        if shower.lot < share { upper } else { upper - 1 }
     }
 
     fn sector(&self, azimuth_rad: f64) -> Sector {
@@ -330,10 +350,16 @@ fn place_in(place: f64, distance_m: f64, pad: &Pad) -> Option<(usize, usize, f32
 
 type Sector = (usize, usize, f64);
 
-/// The mean of the size over a slab, by Simpson's rule.
+/// The mean of the size over a slab, by Simpson's rule over the part below the shower's start.
 fn mean_size(shower: &GaisserHillas, depth: f64, thickness: f64) -> f64 {
-    let half = 0.5 * thickness;
-    (shower.size(depth - half) + 4.0 * shower.size(depth) + shower.size(depth + half)) / 6.0
+    let (top, bottom) = (depth - 0.5 * thickness, depth + 0.5 * thickness);
+    let lit = bottom - top.max(shower.start_g_cm2);
+    if lit <= 0.0 {
+        return 0.0;
+    }
+    let at = |share: f64| shower.size(bottom - share * lit);
+    // Just inside the start: the size jumps there from zero to that of the first pair.
+    (at(0.999) + 4.0 * at(0.5) + at(0.0)) / 6.0 * (lit / thickness)
 }
 
 #[inline]
@@ -354,6 +380,7 @@ struct Slice {
 /// The light pool of one shower.
 #[derive(Clone, Debug)]
 pub struct Footprint {
+    energy: usize,
     slices: Vec<Slice>,
     /// Emitted quanta by detector and slice, at the two ages.
     quanta: Vec<[f32; 2]>,

@@ -6,7 +6,6 @@ use crate::consts::SPEED_OF_LIGHT_M_NS;
 use crate::numerics::Stream;
 use crate::shower::cascade::CascadeSpecies;
 use crate::shower::hadronic::{Axis, EmParticle, Kind, core_of};
-use crate::shower::profile::GaisserHillas;
 use crate::shower::profile::shipped::DevelopmentTable;
 use crate::shower::{Primary, Species};
 
@@ -76,13 +75,7 @@ fn part(
     if x.hypot(y) > STEEPEST_SLOPE || start >= path.ground_depth_g_cm2 {
         return None;
     }
-    let drawn = table.draw(species, photon.energy_gev, start, stream);
-    let development = GaisserHillas::new(
-        drawn.start_g_cm2,
-        drawn.max_g_cm2,
-        drawn.length_g_cm2,
-        drawn.track_g_cm2 * photon.weight,
-    );
+    let development = table.draw(species, photon.energy_gev, start, stream).weighted(photon.weight);
     let down = photon.distance_m;
     let offset_m = [photon.transverse_m[0] + x * down, photon.transverse_m[1] + y * down];
     let lag_m = photon.lag_m + 0.5 * down * (x * x + y * y);

@@ -56,7 +56,12 @@ fn straight() -> EmitterTable {
         offset_lever: 0.0,
     };
     let node = |age| EmitterNode { age, fraction: 1.0, emitters: vec![emitter; 10] };
-    EmitterTable { floor_gev: 0.02, source: "test".into(), nodes: vec![node(0.1), node(2.5)] }
+    EmitterTable {
+        floor_gev: 0.02,
+        source: "test".into(),
+        energies_gev: vec![100.0],
+        nodes: vec![node(0.1), node(2.5)],
+    }
 }
 
 /// Without any spread all light lies inside the largest ring of a straight track, and the total

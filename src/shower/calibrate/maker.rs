@@ -13,6 +13,7 @@ use crate::shower::profile::{Emitter, EmitterNode, EmitterTable, GaisserHillas};
 
 use super::recorder::{BIN_G_CM2, Recorder, Sample};
 use super::shape::moments_fit;
+use super::showers::{LibraryShower, library};
 
 /// What a calibration runs.
 #[derive(Clone, Debug)]
@@ -27,10 +28,14 @@ pub struct CalibrationSettings {
     pub window: f64,
     /// Samples kept per node.
     pub samples: usize,
-    /// Energies (GeV) and numbers of showers that fill the nodes.
+    /// Energies (GeV) and numbers of showers that fill the nodes, one energy after another.
     pub emitter_runs: Vec<(f64, u64)>,
     /// Energies (GeV) and numbers of showers of the development statistics, per primary.
     pub development_runs: Vec<(f64, u64)>,
+    /// Energies (GeV) and numbers of photon showers of the library, rising in energy.
+    pub gamma_library: Vec<(f64, u64)>,
+    /// The same of electron showers.
+    pub electron_library: Vec<(f64, u64)>,
 }
 
 impl CalibrationSettings {
@@ -42,12 +47,10 @@ impl CalibrationSettings {
         Self {
             seed,
             floor_gev: 0.020,
-            ages: vec![
-                0.1, 0.2, 0.3, 0.4, 0.5, 0.6, 0.7, 0.8, 0.9, 1.0, 1.1, 1.2, 1.35, 1.5, 1.7, 1.9,
-            ],
+            ages: vec![0.1, 0.25, 0.4, 0.55, 0.7, 0.85, 1.0, 1.15, 1.3, 1.45, 1.65, 1.9],
             window: 0.03,
-            samples: 4000,
-            emitter_runs: runs(&[(50.0, 3000.0), (300.0, 1000.0), (1000.0, 150.0)]),
+            samples: 2500,
+            emitter_runs: runs(&[(8.0, 12000.0), (40.0, 4000.0), (250.0, 1200.0), (2000.0, 150.0)]),
             development_runs: runs(&[
                 (5.0, 8000.0),
                 (10.0, 8000.0),
@@ -56,6 +59,33 @@ impl CalibrationSettings {
                 (300.0, 1000.0),
                 (1e3, 500.0),
                 (3e3, 200.0),
+            ]),
+            gamma_library: runs(&[
+                (0.3, 300.0),
+                (0.6, 300.0),
+                (1.2, 300.0),
+                (2.5, 400.0),
+                (5.0, 800.0),
+                (8.0, 1000.0),
+                (15.0, 900.0),
+                (40.0, 700.0),
+                (80.0, 600.0),
+                (250.0, 300.0),
+                (800.0, 200.0),
+                (2.5e3, 120.0),
+                (8e3, 60.0),
+            ]),
+            electron_library: runs(&[
+                (0.3, 150.0),
+                (1.2, 200.0),
+                (5.0, 300.0),
+                (15.0, 350.0),
+                (40.0, 300.0),
+                (80.0, 250.0),
+                (250.0, 150.0),
+                (800.0, 100.0),
+                (2.5e3, 60.0),
+                (8e3, 30.0),
             ]),
         }
     }
@@ -88,6 +118,8 @@ pub struct Calibration {
     pub emitters: EmitterTable,
     /// The development, by primary then energy.
     pub development: Vec<DevelopmentRow>,
+    /// The library of profiles, by primary then energy.
+    pub library: Vec<LibraryShower>,
 }
 
 /// One recorded shower.
@@ -147,7 +179,8 @@ impl Calibration {
                 rows
             })
             .collect();
-        Self { emitters, development }
+        let library = library(&environment, settings);
+        Self { emitters, development, library }
     }
 }
 
@@ -197,21 +230,33 @@ struct Gathering {
 const CANDIDATES: usize = 16;
 
 fn emitters(environment: &Environment, settings: &CalibrationSettings) -> EmitterTable {
+    let runs = settings.emitter_runs.iter();
+    EmitterTable {
+        floor_gev: settings.floor_gev,
+        source: format!("reference cascade, seed {}", settings.seed),
+        energies_gev: runs.clone().map(|run| run.0).collect(),
+        nodes: runs.flat_map(|&run| emitters_of(environment, settings, run)).collect(),
+    }
+}
+
+fn emitters_of(
+    environment: &Environment,
+    settings: &CalibrationSettings,
+    (energy_gev, showers): (f64, u64),
+) -> Vec<EmitterNode> {
     let nodes = settings.ages.len();
     let mut all = Gathering {
         candidates: vec![Vec::new(); nodes],
         track: vec![0.0; nodes],
         fitted: vec![0.0; nodes],
     };
-    for &(energy_gev, showers) in &settings.emitter_runs {
-        for first in (0..showers).step_by(64) {
-            let batch: Vec<_> = (first..(first + 64).min(showers))
-                .into_par_iter()
-                .filter_map(|shower| gather(environment, settings, energy_gev, shower))
-                .collect();
-            for part in batch {
-                merge(&mut all, part, settings.samples * CANDIDATES);
-            }
+    for first in (0..showers).step_by(16) {
+        let batch: Vec<_> = (first..(first + 16).min(showers))
+            .into_par_iter()
+            .filter_map(|shower| gather(environment, settings, energy_gev, shower))
+            .collect();
+        for part in batch {
+            merge(&mut all, part, settings.samples * CANDIDATES);
         }
     }
     let nodes = settings.ages.iter().zip(all.candidates).enumerate();
@@ -224,11 +269,7 @@ fn emitters(environment: &Environment, settings: &CalibrationSettings) -> Emitte
             .collect();
         EmitterNode { age, fraction: all.track[place] / all.fitted[place], emitters }
     });
-    EmitterTable {
-        floor_gev: settings.floor_gev,
-        source: format!("reference cascade, seed {}", settings.seed),
-        nodes: nodes.collect(),
-    }
+    nodes.collect()
 }
 
 fn gather(
@@ -239,8 +280,8 @@ fn gather(
 ) -> Option<Gathering> {
     let species = CascadeSpecies::Gamma;
     let key = (settings.seed, shower);
-    // One sample per g/cm2 at 50 GeV, rarer above: about the same number per shower.
-    let spacing = (energy_gev / 50.0).max(1.0);
+    // One sample per g/cm2 up to 50 GeV, rarer above.
+    let spacing = (energy_gev / 50.0).clamp(1.0, 8.0);
     let recorded =
         recorded_shower(environment, species, energy_gev, settings.floor_gev, spacing, key);
     let fit = moments_fit(&recorded.profile, recorded.start_g_cm2)?;

@@ -29,3 +29,13 @@ pub fn moments_fit(profile: &[f64], start_g_cm2: f64) -> Option<GaisserHillas> {
     let max = start_g_cm2 + power * length;
     Some(GaisserHillas::new(start_g_cm2, max, length, sum * BIN_G_CM2))
 }
+
+/// Mean depth of a profile in bins after its start, g/cm2; zero where it is empty.
+pub fn mean_depth_g_cm2(profile: &[f64], start_g_cm2: f64) -> f64 {
+    let (mut sum, mut first) = (0.0, 0.0);
+    for (bin, size) in profile.iter().enumerate() {
+        sum += size;
+        first += size * ((bin as f64 + 0.5) * BIN_G_CM2 - start_g_cm2);
+    }
+    if sum > 0.0 { first / sum } else { 0.0 }
+}

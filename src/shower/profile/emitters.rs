@@ -36,29 +36,24 @@ pub struct EmitterNode {
     pub emitters: Vec<Emitter>,
 }
 
-/// Emitters by age, nodes sorted by rising age.
+/// Emitters by energy of the primary and age: all ages of the lowest energy first, nodes of one
+/// energy sorted by rising age. All energies have the same ages.
 #[derive(Clone, Debug)]
 pub struct EmitterTable {
     /// Energy above which particles are counted, GeV.
     pub floor_gev: f64,
     /// Where it comes from, for the list of models used.
     pub source: String,
+    /// Energies of the primaries, GeV, rising.
+    pub energies_gev: Vec<f64>,
     /// The nodes.
     pub nodes: Vec<EmitterNode>,
 }
 
 impl EmitterTable {
-    /// The two nodes around an age and the weight of the second; held constant beyond the ends.
-    pub fn bracket(&self, age: f64) -> (usize, usize, f64) {
-        let last = self.nodes.len() - 1;
-        let upper = self.nodes.partition_point(|node| node.age < age);
-        if upper == 0 {
-            return (0, 0, 0.0);
-        }
-        if upper > last {
-            return (last, last, 0.0);
-        }
-        let (low, high) = (self.nodes[upper - 1].age, self.nodes[upper].age);
-        (upper - 1, upper, (age - low) / (high - low))
+    /// The ages of the nodes.
+    pub fn ages(&self) -> Vec<f64> {
+        let count = self.nodes.len() / self.energies_gev.len();
+        self.nodes[..count].iter().map(|node| node.age).collect()
     }
 }

@@ -87,6 +87,7 @@ pub fn table(spread: Spread, samples: usize, seed: u64) -> EmitterTable {
     EmitterTable {
         floor_gev: FLOOR_MEV * 1e-3,
         source: "Hillas 1982, J. Phys. G 8, 1461".into(),
+        energies_gev: vec![100.0],
         nodes: nodes.collect(),
     }
 }

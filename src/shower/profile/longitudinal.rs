@@ -3,6 +3,8 @@
 use crate::consts::{AIR_CRITICAL_ENERGY_GEV, AIR_RADIATION_LENGTH_G_CM2};
 use crate::numerics::Stream;
 
+use super::library::Shape;
+
 /// Number of charged particles of the mean photon shower after `depth_x0` radiation lengths:
 /// N = 0.31 / sqrt(b) exp[t (1 - 1.5 ln s)], b = ln(E / E_c), s = 3 t / (t + 2 b).
 ///
@@ -21,7 +23,8 @@ pub fn greisen(energy_gev: f64, critical_energy_gev: f64, depth_x0: f64) -> f64 
 }
 
 /// A Gaisser-Hillas profile whose integral over depth is the charged track length:
-/// N(X) proportional to u^(m) exp(-u), u = (X - start) / length, m = (max - start) / length.
+/// N(X) proportional to u^(m) exp(-u), u = (X - start) / length, m = (max - start) / length;
+/// or, where it was drawn from the library of showers, that shower's own profile.
 ///
 /// # Source
 /// Gaisser & Hillas 1977, Proc. 15th ICRC 8, 353; the same curve as the gamma distribution of
@@ -36,7 +39,12 @@ pub struct GaisserHillas {
     pub length_g_cm2: f64,
     /// Integral of N over depth: total charged track length, g/cm2.
     pub track_g_cm2: f64,
+    /// Energy of the primary, GeV: which emitters it has.
+    pub energy_gev: f64,
+    /// A number between 0 and 1 that decides between the emitters of the two energies around.
+    pub lot: f64,
     log_norm: f64,
+    shape: Option<Shape>,
 }
 
 impl GaisserHillas {
@@ -44,12 +52,48 @@ impl GaisserHillas {
     pub fn new(start_g_cm2: f64, max_g_cm2: f64, length_g_cm2: f64, track_g_cm2: f64) -> Self {
         let power = (max_g_cm2 - start_g_cm2) / length_g_cm2;
         let log_norm = (track_g_cm2 / length_g_cm2).ln() - libm::lgamma(power + 1.0);
-        Self { start_g_cm2, max_g_cm2, length_g_cm2, track_g_cm2, log_norm }
+        let energy_gev = track_g_cm2 * AIR_CRITICAL_ENERGY_GEV / AIR_RADIATION_LENGTH_G_CM2;
+        let (lot, shape) = (0.5, None);
+        Self { start_g_cm2, max_g_cm2, length_g_cm2, track_g_cm2, energy_gev, lot, log_norm, shape }
+    }
+
+    /// A profile drawn from the library; `length_g_cm2` is that of the curve fitted to it.
+    pub fn of_shape(
+        start_g_cm2: f64,
+        length_g_cm2: f64,
+        shape: Shape,
+        energy_gev: f64,
+        lot: f64,
+    ) -> Self {
+        let max_g_cm2 = start_g_cm2 + shape.max_g_cm2();
+        let track_g_cm2 = shape.track_g_cm2();
+        let log_norm = 0.0;
+        let shape = Some(shape);
+        Self { start_g_cm2, max_g_cm2, length_g_cm2, track_g_cm2, energy_gev, lot, log_norm, shape }
+    }
+
+    /// Whether it is a shower of the library: then its numbers are of particles above the floor of
+    /// the emitters, and need no correction.
+    pub fn is_shape(&self) -> bool {
+        self.shape.is_some()
+    }
+
+    /// The same profile with all numbers times a weight.
+    pub fn weighted(self, weight: f64) -> Self {
+        Self {
+            track_g_cm2: self.track_g_cm2 * weight,
+            log_norm: self.log_norm + weight.ln(),
+            shape: self.shape.map(|shape| shape.weighted(weight)),
+            ..self
+        }
     }
 
     /// Number of charged particles at a depth along the axis.
     #[inline]
     pub fn size(&self, depth_g_cm2: f64) -> f64 {
+        if let Some(shape) = &self.shape {
+            return shape.size(depth_g_cm2 - self.start_g_cm2);
+        }
         let scaled = (depth_g_cm2 - self.start_g_cm2) / self.length_g_cm2;
         if scaled <= 0.0 {
             return 0.0;

@@ -1,10 +1,12 @@
 //! The tables that ship with the program, made by the reference cascade.
 
 use std::io::Cursor;
+use std::sync::OnceLock;
 
 use polars::prelude::{DataFrame, ParquetReader, SerReader};
 
 use super::emitters::{Emitter, EmitterNode, EmitterTable};
+use super::library::Shape;
 use super::longitudinal::GaisserHillas;
 use crate::numerics::Stream;
 use crate::shower::cascade::CascadeSpecies;
@@ -12,6 +14,8 @@ use crate::shower::cascade::CascadeSpecies;
 const EMITTERS: &[u8] = include_bytes!("data/emitters.parquet");
 const AGES: &str = include_str!("data/emitter_ages.csv");
 const DEVELOPMENT: &str = include_str!("data/development.csv");
+const SHOWERS: &[u8] = include_bytes!("data/showers.parquet");
+const PROFILES: &[u8] = include_bytes!("data/profiles.parquet");
 
 /// What can be wrong with a table.
 #[derive(Debug, thiserror::Error)]
@@ -83,16 +87,20 @@ impl EmitterTable {
             offset_lever: columns[7][row],
         };
         let mut first = 0;
-        let mut nodes = Vec::new();
-        for (index, (age, numbers)) in ages.iter().enumerate() {
+        let (mut nodes, mut energies_gev) = (Vec::new(), Vec::new());
+        for (index, (energy, numbers)) in ages.iter().enumerate() {
             let bad = || TableError::Line {
                 file: "emitter_ages.csv",
                 line: index + 1,
-                text: age.clone(),
+                text: energy.clone(),
             };
-            let (&[fraction, count], Ok(age)) = (&numbers[..], age.parse()) else {
+            let (&[age, fraction, count], Ok(energy)) = (&numbers[..], energy.parse::<f64>())
+            else {
                 return Err(bad());
             };
+            if energies_gev.last() != Some(&energy) {
+                energies_gev.push(energy);
+            }
             let last = first + count as usize;
             if last > columns[0].len() {
                 return Err(bad());
@@ -102,30 +110,88 @@ impl EmitterTable {
             first = last;
         }
         let source = "reference cascade of this program".into();
-        Ok(Self { floor_gev: 0.020, source, nodes })
+        Ok(Self { floor_gev: 0.020, source, energies_gev, nodes })
     }
 }
 
 /// How showers of the reference cascade develop and fluctuate, by primary and energy.
 ///
-/// ln(depth of maximum after the start), ln(scale length) and ln(track length per energy) are
-/// drawn from a normal law with the tabulated means and covariances, interpolated in ln E. Beyond
-/// the ends of the table (5 GeV, 100 TeV) the outermost rows are continued linearly.
-///
-/// The track length is that of particles above 20 MeV: [`EmitterNode::fraction`] of these tables is
-/// close to 1 and corrects the shape of the profile.
+/// A shower is drawn from a library of recorded ones at the two energies around its own, carried
+/// to its energy by [`Shape`]: mean profile, fluctuations and their correlations are those of the
+/// cascade. Beyond the ends of the library (0.3 GeV, 8 TeV) the outermost showers are carried
+/// further. The numbers are of particles above 20 MeV.
 #[derive(Clone, Debug)]
 pub struct DevelopmentTable {
-    gamma: Vec<Row>,
-    electron: Vec<Row>,
+    starts: Vec<(f64, f64)>,
+    library: &'static Library,
 }
 
-#[derive(Clone, Debug)]
-struct Row {
-    log_energy: f64,
-    start_g_cm2: f64,
-    mean: [f64; 3],
-    covariance: [f64; 6],
+#[derive(Debug)]
+struct Library {
+    gamma: Vec<LibraryNode>,
+    electron: Vec<LibraryNode>,
+}
+
+#[derive(Debug)]
+struct LibraryNode {
+    energy_gev: f64,
+    showers: Vec<LibraryShower>,
+}
+
+#[derive(Debug)]
+struct LibraryShower {
+    max_g_cm2: f64,
+    length_g_cm2: f64,
+    sizes: Vec<f32>,
+}
+
+static LIBRARY: OnceLock<Library> = OnceLock::new();
+
+impl Library {
+    fn shipped() -> Result<&'static Self, TableError> {
+        if let Some(library) = LIBRARY.get() {
+            return Ok(library);
+        }
+        let showers = ParquetReader::new(Cursor::new(SHOWERS)).finish()?;
+        let profiles = ParquetReader::new(Cursor::new(PROFILES)).finish()?;
+        let read = Self::from_frames(&showers, &profiles)?;
+        Ok(LIBRARY.get_or_init(|| read))
+    }
+
+    fn from_frames(
+        showers: &DataFrame,
+        profiles: &DataFrame,
+    ) -> Result<Self, polars::error::PolarsError> {
+        let column = |frame: &DataFrame, name: &str| {
+            let values: Vec<f32> = frame.column(name)?.f32()?.into_no_null_iter().collect();
+            Ok::<_, polars::error::PolarsError>(values)
+        };
+        let electron = column(showers, "electron")?;
+        let energy = column(showers, "energy_gev")?;
+        let max = column(showers, "max_g_cm2")?;
+        let length = column(showers, "length_g_cm2")?;
+        let bins = column(showers, "bins")?;
+        let sizes = column(profiles, "particles")?;
+        let mut library = Self { gamma: Vec::new(), electron: Vec::new() };
+        let mut first = 0;
+        for row in 0..energy.len() {
+            let nodes =
+                if electron[row] > 0.5 { &mut library.electron } else { &mut library.gamma };
+            let energy_gev = f64::from(energy[row]);
+            if nodes.last().is_none_or(|node| node.energy_gev != energy_gev) {
+                nodes.push(LibraryNode { energy_gev, showers: Vec::new() });
+            }
+            let last = (first + bins[row] as usize).min(sizes.len());
+            let place = nodes.len() - 1;
+            nodes[place].showers.push(LibraryShower {
+                max_g_cm2: f64::from(max[row]),
+                length_g_cm2: f64::from(length[row]),
+                sizes: sizes[first..last].to_vec(),
+            });
+            first = last;
+        }
+        Ok(library)
+    }
 }
 
 impl DevelopmentTable {
@@ -134,48 +200,31 @@ impl DevelopmentTable {
     /// # Errors
     /// A damaged table; not for the file that ships.
     pub fn shipped() -> Result<Self, TableError> {
-        let (mut gamma, mut electron) = (Vec::new(), Vec::new());
+        let mut starts = Vec::new();
         for (index, (name, n)) in rows("development.csv", DEVELOPMENT)?.iter().enumerate() {
-            if n.len() != 12 {
+            if n.len() < 3 {
                 return Err(TableError::Line {
                     file: "development.csv",
                     line: index + 1,
                     text: name.clone(),
                 });
             }
-            let row = Row {
-                log_energy: n[0].ln(),
-                start_g_cm2: n[2],
-                mean: [n[3], n[4], n[5]],
-                covariance: [n[6], n[7], n[8], n[9], n[10], n[11]],
-            };
-            if name == "gamma" { gamma.push(row) } else { electron.push(row) }
+            if name == "gamma" {
+                starts.push((n[0].ln(), n[2]));
+            }
         }
-        Ok(Self { gamma, electron })
+        Ok(Self { starts, library: Library::shipped()? })
     }
 
-    fn row(&self, species: CascadeSpecies, energy_gev: f64) -> Row {
-        let rows = if species == CascadeSpecies::Gamma { &self.gamma } else { &self.electron };
-        let log_energy = energy_gev.ln();
-        let upper = rows.partition_point(|row| row.log_energy < log_energy);
-        let upper = upper.clamp(1, rows.len() - 1);
-        let (a, b) = (&rows[upper - 1], &rows[upper]);
-        let share = (log_energy - a.log_energy) / (b.log_energy - a.log_energy);
-        let mix = |a: f64, b: f64| a + share * (b - a);
-        // Covariances are not continued beyond the ends: they must stay positive.
-        let inside = share.clamp(0.0, 1.0);
-        let within = |a: f64, b: f64| a + inside * (b - a);
-        Row {
-            log_energy,
-            start_g_cm2: within(a.start_g_cm2, b.start_g_cm2),
-            mean: [0, 1, 2].map(|i| mix(a.mean[i], b.mean[i])),
-            covariance: [0, 1, 2, 3, 4, 5].map(|i| within(a.covariance[i], b.covariance[i])),
-        }
-    }
-
-    /// Draws the depth of a photon's first interaction, g/cm2 along the axis.
+    /// Draws the depth of a photon's first interaction, g/cm2 along the axis; the mean is held
+    /// beyond 5 GeV and 100 TeV.
     pub fn photon_start_g_cm2(&self, energy_gev: f64, stream: &mut Stream) -> f64 {
-        self.row(CascadeSpecies::Gamma, energy_gev).start_g_cm2 * stream.exponential()
+        let log_energy = energy_gev.ln();
+        let upper = self.starts.partition_point(|row| row.0 < log_energy);
+        let upper = upper.clamp(1, self.starts.len() - 1);
+        let (a, b) = (self.starts[upper - 1], self.starts[upper]);
+        let share = ((log_energy - a.0) / (b.0 - a.0)).clamp(0.0, 1.0);
+        (a.1 + share * (b.1 - a.1)) * stream.exponential()
     }
 
     /// Draws the development of a cascade that begins at `start_g_cm2`: the first interaction of a
@@ -187,19 +236,24 @@ impl DevelopmentTable {
         start_g_cm2: f64,
         stream: &mut Stream,
     ) -> GaisserHillas {
-        let row = self.row(species, energy_gev);
-        let [uu, uv, uw, vv, vw, ww] = row.covariance;
-        // Cholesky factor of the covariance.
-        let a = uu.sqrt();
-        let (b, d) = (uv / a, uw / a);
-        let c = (vv - b * b).max(0.0).sqrt();
-        let e = if c > 0.0 { (vw - b * d) / c } else { 0.0 };
-        let f = (ww - d * d - e * e).max(0.0).sqrt();
-        let (x, y, z) = (stream.normal(), stream.normal(), stream.normal());
-        let u = row.mean[0] + a * x;
-        let v = row.mean[1] + b * x + c * y;
-        let w = row.mean[2] + d * x + e * y + f * z;
-        GaisserHillas::new(start_g_cm2, start_g_cm2 + u.exp(), v.exp(), w.exp() * energy_gev)
+        let library = self.library;
+        let nodes =
+            if species == CascadeSpecies::Gamma { &library.gamma } else { &library.electron };
+        let upper = nodes.partition_point(|node| node.energy_gev < energy_gev);
+        let upper = upper.clamp(1, nodes.len() - 1);
+        let (low, high) = (&nodes[upper - 1], &nodes[upper]);
+        let share = (energy_gev / low.energy_gev).ln() / (high.energy_gev / low.energy_gev).ln();
+        let node = if stream.uniform() < share { high } else { low };
+        let place = (stream.uniform() * node.showers.len() as f64) as usize;
+        let shower = &node.showers[place];
+        let shape = Shape::new(&shower.sizes, shower.max_g_cm2, energy_gev / node.energy_gev);
+        GaisserHillas::of_shape(
+            start_g_cm2,
+            shower.length_g_cm2,
+            shape,
+            energy_gev,
+            stream.uniform(),
+        )
     }
 }
 
@@ -210,13 +264,9 @@ mod tests {
     #[test]
     fn shipped_tables_are_whole() {
         let table = EmitterTable::shipped().expect("the table that ships is readable");
-        assert!(table.nodes.len() >= 12);
+        assert_eq!(table.nodes.len(), table.energies_gev.len() * table.ages().len());
         for node in &table.nodes {
-            assert!(node.emitters.len() >= 1000, "age {}", node.age);
-            // The fit is by moments: where most of the light comes from it follows the tracks to
-            // a tenth; at early ages it falls short of the two particles of the first pair.
-            let within = (node.fraction - 1.0).abs() < 0.1 || node.age < 0.5;
-            assert!(within, "age {}: {}", node.age, node.fraction);
+            assert!(node.emitters.len() >= 100, "age {}", node.age);
             let above = node.emitters.iter().all(|e| f64::from(e.energy_gev) > 0.999 * 0.020);
             assert!(above, "age {}", node.age);
         }
