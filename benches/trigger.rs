@@ -16,6 +16,7 @@ fn kind() -> TelescopeKind {
         obscuration: 0.05,
         reflectivity: Curve::named("aluminium-quartz").expect("built in"),
         point_spread_deg: 0.03,
+        mirror_delay_ns: 0.0,
         point_spread_growth: 0.02,
         camera: Camera::new(PixelShape::Hexagonal, 0.15, 5.2).expect("few pixels"),
         light_guide_efficiency: 0.85,

@@ -4,6 +4,7 @@ mod finalists;
 mod levels;
 mod models;
 mod pool;
+mod reach;
 mod robust;
 mod rows;
 mod scan;
@@ -105,6 +106,8 @@ struct Planned<'a> {
     members: Vec<Vec<usize>>,
     gamma: Weighted,
     backgrounds: Vec<Weighted>,
+    /// Share of the layouts' rates beyond the thrown radius: gamma, then each background.
+    beyond: Vec<f64>,
 }
 
 /// Simulates a study, or reads its stored tables, scores its layouts and ranks them.
@@ -161,37 +164,56 @@ fn simulate<'a>(
     let sky_per_ns: Vec<f64> =
         study.kinds.iter().map(|kind| kind.sky_photoelectrons_per_ns(&study.night_sky)).collect();
     let accidental = setup::accidentals(study, &sky_per_ns);
-    let given_pe = setup::thresholds_pe(study, &accidental)?;
     let (columns, members) = columns(study);
     let gamma = [setup::gamma_throw(study, &columns)].into_iter();
     let backgrounds = study.backgrounds.iter();
     let backgrounds =
         backgrounds.map(|known| setup::background_throw(study, known.species, &columns));
-    let throws: Vec<_> = gamma.chain(backgrounds).collect();
-    let words = throws.iter().map(|(throw, repetitions)| throw.word_count() * repetitions);
-    progress.stage("showers", words.sum::<usize>() as u64);
-    let under = (light, sky_per_ns.clone());
-    let samples = samples(study, under, &columns, &throws, tables, progress)?;
-    let spectra = core::iter::once(gamma_spectrum).chain(background_spectra);
-    let mut weighted =
-        samples.into_iter().zip(spectra).map(|(sample, spectrum)| Weighted { sample, spectrum });
-    let gamma = weighted.next().expect("a throw gives a sample");
-    let backgrounds = weighted.collect();
-    let thresholds_pe = Vec::new();
-    let mut planned = Planned {
-        study,
-        thresholds_pe,
-        accidental,
-        sky_per_ns,
-        columns,
-        members,
-        gamma,
-        backgrounds,
+    let mut throws: Vec<_> = gamma.chain(backgrounds).collect();
+    let spectra: Vec<Spectrum> =
+        core::iter::once(gamma_spectrum).chain(background_spectra).collect();
+    let planned = |throws: &[(Throw, usize)], stage: &str, beyond: Vec<f64>| {
+        let words = throws.iter().map(|(throw, repetitions)| throw.word_count() * repetitions);
+        progress.stage(stage, words.sum::<usize>() as u64);
+        let under = (light, sky_per_ns.clone());
+        let samples = samples(study, under, &columns, throws, tables, progress)?;
+        let mut weighted = samples
+            .into_iter()
+            .zip(spectra.iter().cloned())
+            .map(|(sample, spectrum)| Weighted { sample, spectrum });
+        let planned = Planned {
+            study,
+            thresholds_pe: Vec::new(),
+            accidental: accidental.clone(),
+            sky_per_ns: sky_per_ns.clone(),
+            columns: columns.clone(),
+            members: members.clone(),
+            gamma: weighted.next().expect("a throw gives a sample"),
+            backgrounds: weighted.collect(),
+            beyond,
+        };
+        planned.with_thresholds()
     };
-    let layouts = 0..study.layouts.len();
-    let found = layouts.map(|layout| planned.quiet_pe(layout, &given_pe));
-    planned.thresholds_pe = found.collect::<Result<_, _>>()?;
-    Ok(planned)
+    let mut beyond = vec![f64::NAN; throws.len()];
+    if study.budget.impact_radius_m.is_none() {
+        let (_, extent_m) = setup::centre_and_extent_m(&columns);
+        let pilots: Vec<_> = throws
+            .iter()
+            .map(|(throw, count)| (reach::pilot(throw, *count, extent_m), 1))
+            .collect();
+        let pilot = planned(&pilots, "pilot showers", beyond.clone())?;
+        let weighted = core::iter::once(&pilot.gamma).chain(&pilot.backgrounds);
+        for (place, weighted) in weighted.enumerate() {
+            let layouts = 0..study.layouts.len();
+            let planes: Vec<Vec<u64>> = layouts
+                .map(|layout| pilot.vote(&weighted.sample, layout, &pilot.thresholds_pe[layout]))
+                .collect();
+            if let Some(fit) = reach::fit(&weighted.sample, &weighted.spectrum, &planes) {
+                (throws[place].0.rings_m, beyond[place]) = (fit.rings_m, fit.beyond);
+            }
+        }
+    }
+    planned(&throws, "showers", beyond)
 }
 
 /// Simulates a study's backgrounds, and as few gammas as can be: for rates of showers only.
@@ -252,6 +274,15 @@ fn columns(study: &Study) -> (Vec<Column>, Vec<Vec<usize>>) {
 }
 
 impl Planned<'_> {
+    /// The same with the thresholds of every layout found.
+    fn with_thresholds(mut self) -> Result<Self, PlanError> {
+        let given_pe = setup::thresholds_pe(self.study, &self.accidental)?;
+        let layouts = 0..self.study.layouts.len();
+        let found = layouts.map(|layout| self.quiet_pe(layout, &given_pe));
+        self.thresholds_pe = found.collect::<Result<_, _>>()?;
+        Ok(self)
+    }
+
     /// The thresholds of a layout: those given, and the lowest quiet ones of the other kinds.
     fn quiet_pe(&self, layout: usize, given_pe: &[Option<f64>]) -> Result<Vec<f64>, PlanError> {
         let kinds = self.members[layout].iter().map(|&column| self.columns[column].kind);

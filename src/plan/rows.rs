@@ -2,14 +2,17 @@
 
 use crate::layout::{Compared, Comparison};
 use crate::light::LightModel;
-use crate::rates::{EnergyBin, differential_rates, edge_fraction, effective_areas, threshold_gev};
+use crate::rates::{
+    EnergyBin, Estimate, angle_rates_hz, beyond_fraction, dead_fraction, differential_rates,
+    effective_areas, event_rates, threshold_gev,
+};
 use crate::report::{
     AreaRow, Counter, KindRow, LayoutMap, LayoutRow, PlacedTelescope, PlanResult, PoolRow,
-    Provenance, RateRow, ScanRow, SiteSummary,
+    PrimaryRow, Provenance, RateRow, ScanRow, SiteSummary,
 };
 use crate::telescope::{Threshold, accidental};
 
-use super::{Planned, Scored, Weighted, models};
+use super::{Planned, Scored, Weighted, models, setup};
 
 const BINS_PER_DECADE: usize = 5;
 
@@ -42,6 +45,7 @@ pub fn result(
             .enumerate()
             .map(|(rank, place)| layout_row(planned, &scored[place.layout], rank, place))
             .collect(),
+        primaries: primaries(planned, scored, ranked),
         effective_areas,
         differential_rates,
         light_pool,
@@ -70,6 +74,7 @@ fn layout_row(planned: &Planned<'_>, scored: &Scored, rank: usize, place: &Compa
     let recording = planned.study.recording;
     let event_bytes = pixels as f64 * recording.bytes_per_pixel;
     let all_hz = scored.gamma.value + background.value + accidental_rate_hz;
+    let dead = dead_fraction(all_hz, 1e-6 * planned.study.dead_time_us);
     LayoutRow {
         rank: rank + 1,
         tier: place.tier,
@@ -85,6 +90,8 @@ fn layout_row(planned: &Planned<'_>, scored: &Scored, rank: usize, place: &Compa
         threshold_gev: threshold.value,
         threshold_error_gev: threshold.error,
         accidental_rate_hz,
+        gamma_rate_per_hour: 3_600.0 * scored.gamma.value * (1.0 - dead),
+        dead_fraction: dead,
         cost,
         rate_per_cost_hz: if cost > 0.0 { scored.gamma.value / cost } else { f64::NAN },
         rate_per_root_background: scored.gamma.value / background.value.sqrt(),
@@ -118,6 +125,31 @@ pub fn scans(planned: &Planned<'_>, scores: &Comparison, ranked: &[Compared]) ->
         })
     };
     ranked.iter().filter_map(row).collect()
+}
+
+/// Rate and peak energy of each primary in each layout.
+fn primaries(planned: &Planned<'_>, scored: &[Scored], ranked: &[Compared]) -> Vec<PrimaryRow> {
+    let mut rows = Vec::new();
+    for place in ranked {
+        let layout = &scored[place.layout];
+        let name = &planned.study.layouts[place.layout].name;
+        let mut row = |weighted: &Weighted, words: &[f64], rate: Estimate| {
+            let peak = threshold_gev(&weighted.sample.words, words);
+            rows.push(PrimaryRow {
+                layout: name.clone(),
+                primary: weighted.sample.species.to_string(),
+                rate_hz: rate.value,
+                rate_error_hz: rate.error,
+                peak_energy_gev: peak.value,
+                peak_energy_error_gev: peak.error,
+            });
+        };
+        row(&planned.gamma, &layout.gamma_words, layout.gamma);
+        for (weighted, (_, words, rate)) in planned.backgrounds.iter().zip(&layout.backgrounds) {
+            row(weighted, words, *rate);
+        }
+    }
+    rows
 }
 
 fn energy_rows(
@@ -190,6 +222,7 @@ fn site(planned: &Planned<'_>, light: &LightModel) -> SiteSummary {
         longitude_deg: site.longitude_deg,
         altitude_m: site.altitude_m,
         depth_g_cm2: depth,
+        cutoff_gv: setup::cutoff_gv(planned.study),
         zenith_deg: pointing.zenith_deg,
         azimuth_deg: pointing.azimuth_deg,
         boundary_enu_m: site.boundary_enu_m.clone(),
@@ -260,20 +293,15 @@ fn warnings(planned: &Planned<'_>, scored: &[Scored], ranked: &[Compared]) -> Ve
     for [name, first] in &planned.study.left_out {
         warnings.push(format!("{name} is the same layout as {first} and is left out"));
     }
-    let edges = [(&planned.gamma, &leader.gamma_words, leader.gamma)].into_iter().chain(
-        planned.backgrounds.iter().zip(&leader.backgrounds).map(|(w, (_, r, e))| (w, r, *e)),
+    let all = [(&planned.gamma, &leader.gamma_plane, leader.gamma)].into_iter().chain(
+        planned.backgrounds.iter().zip(&leader.backgrounds).map(|(w, (p, _, e))| (w, p, *e)),
     );
-    for (weighted, words, estimate) in edges {
-        let (name, sample) = (weighted.sample.species, &weighted.sample);
-        let edge = edge_fraction(&sample.words, words);
-        let throw = &sample.throw;
-        let radius = throw.rings_m[throw.rings_m.len() - 1];
-        let inner = throw.rings_m[throw.rings_m.len() - 2];
-        warnings.push(format!(
-            "{name}: {:.1} % of the leading layout's rate comes from cores between {inner:.0} m and \
-             the thrown radius of {radius:.0} m; less lies beyond",
-            100.0 * edge
-        ));
+    for (place, (weighted, plane, estimate)) in all.enumerate() {
+        let (name, throw) = (weighted.sample.species, &weighted.sample.throw);
+        warnings.push(planned.reach_note(place));
+        if throw.cone_rad > 0.0 {
+            warnings.push(cone_note(weighted, plane));
+        }
         let relative = estimate.error / estimate.value;
         let wanted = planned.study.budget.background_rate_error;
         if throw.cone_rad > 0.0 && relative > wanted {
@@ -287,6 +315,24 @@ fn warnings(planned: &Planned<'_>, scored: &[Scored], ranked: &[Compared]) -> Ve
         }
     }
     warnings
+}
+
+/// What the cone of directions leaves out, by continuing the rate's fall with the angle.
+fn cone_note(weighted: &Weighted, plane: &[u64]) -> String {
+    const RINGS: usize = 6;
+    let sample = &weighted.sample;
+    let rates = event_rates(&sample.words, &weighted.spectrum);
+    let by_angle = angle_rates_hz(sample, plane, &rates, RINGS);
+    let step = sample.throw.cone_rad / RINGS as f64;
+    let radii: Vec<f64> = (1..=RINGS).map(|ring| step * ring as f64).collect();
+    let (name, degrees) = (sample.species, sample.throw.cone_rad.to_degrees());
+    let beyond = beyond_fraction(&radii, &by_angle);
+    let much = if beyond > 0.02 { "; widen cone_half_angle_deg" } else { "" };
+    format!(
+        "{name}: directions thrown to {degrees:.1} degrees from the pointing; {:.1} % of the leading \
+         layout's rate lies beyond by extrapolation{much}",
+        100.0 * beyond
+    )
 }
 
 impl Planned<'_> {

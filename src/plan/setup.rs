@@ -8,7 +8,7 @@ use crate::atmosphere::{Extinction, TransmissionTable};
 use crate::consts::SPEED_OF_LIGHT_M_NS;
 use crate::light::{Detector, LightModel, LightSettings};
 use crate::numerics::{Stage, Stream};
-use crate::rates::{Spectrum, SpectrumError};
+use crate::rates::{Spectrum, SpectrumError, dipole_latitude_rad, vertical_cutoff_gv};
 use crate::response::{Column, SHOWERS_PER_WORD, Throw};
 use crate::shower::profile::EmitterTable;
 use crate::shower::profile::shipped::DevelopmentTable;
@@ -19,10 +19,13 @@ use crate::units::radians;
 
 /// Slabs of air: converged to 1 % (test `verify_pool_converges_in_slabs_and_samples`).
 const SLABS: usize = 36;
-/// Energies are thrown as E to this negative power.
-const THROWN_INDEX: f64 = 1.5;
-/// How far from the outermost telescope a shower can trigger, m at zenith: beyond this the rate is
-/// extrapolated by the warning on the outermost ring.
+/// Gamma energies are thrown as E to this negative power: flatter than a source, so that areas at
+/// high energies are known too.
+const GAMMA_INDEX: f64 = 1.5;
+/// The same for backgrounds: near the flux times the root of the trigger probability, which makes
+/// the error of the rate smallest.
+const BACKGROUND_INDEX: f64 = 2.0;
+/// How far from the outermost telescope cores are thrown before a pilot run says better, m at zenith.
 const REACH_M: f64 = 420.0;
 
 /// Centre and extent of the telescopes are rounded to this, m, so that a pad more or less does not
@@ -154,13 +157,39 @@ pub fn front_ns<'a>(study: &Study, columns: impl Iterator<Item = &'a Column>) ->
 /// How gammas are thrown, and how often the throw is repeated.
 pub fn gamma_throw(study: &Study, columns: &[Column]) -> (Throw, usize) {
     let energy_gev = study.budget.gamma_energy_gev;
-    throw(study, Species::Gamma, energy_gev, 0.0, study.budget.gamma_showers, columns)
+    let (throw, repetitions) =
+        throw(study, Species::Gamma, energy_gev, 0.0, study.budget.gamma_showers, columns);
+    (Throw { pointing: source(study), ..throw }, repetitions)
+}
+
+/// Where gamma rays come from: the pointing, or a place beside it in the camera.
+fn source(study: &Study) -> Direction {
+    let centre = pointing(study);
+    let offset = radians(study.pointing.source_offset_deg);
+    if offset == 0.0 {
+        return centre;
+    }
+    let (right, up) = centre.transverse();
+    let (sin, cos) = radians(study.pointing.source_bearing_deg).sin_cos();
+    let aside = right * sin + up * cos;
+    Direction::of(&(centre.to_source() * offset.cos() + aside * offset.sin()))
+}
+
+/// Vertical geomagnetic cutoff of the site, GV; zero if the study states no field.
+pub fn cutoff_gv(study: &Study) -> f64 {
+    study.site.field_ut.map_or(0.0, |[east, north, up]| {
+        vertical_cutoff_gv(dipole_latitude_rad(up.atan2(east.hypot(north))))
+    })
 }
 
 /// How a background is thrown, and how often the throw is repeated.
 pub fn background_throw(study: &Study, species: Species, columns: &[Column]) -> (Throw, usize) {
     let cone = radians(study.pointing.cone_half_angle_deg);
-    let energy_gev = study.budget.background_energy_gev;
+    let mut energy_gev = study.budget.background_energy_gev;
+    if matches!(species, Species::Electron | Species::Positron) {
+        // A rigidity in GV is an energy in GeV for them.
+        energy_gev[0] = energy_gev[0].max(cutoff_gv(study)).min(0.5 * energy_gev[1]);
+    }
     throw(study, species, energy_gev, cone, study.budget.background_showers, columns)
 }
 
@@ -172,18 +201,7 @@ fn throw(
     showers: u64,
     columns: &[Column],
 ) -> (Throw, usize) {
-    let middle = |axis: usize| {
-        let places = || columns.iter().map(|column| column.position_m[axis]);
-        let (low, high) =
-            (places().fold(f64::INFINITY, f64::min), places().fold(f64::NEG_INFINITY, f64::max));
-        (0.5 * (low + high) / ROUNDED_M).round() * ROUNDED_M
-    };
-    let centre_m = [middle(0), middle(1)];
-    let extent = columns
-        .iter()
-        .map(|c| (c.position_m[0] - centre_m[0]).hypot(c.position_m[1] - centre_m[1]))
-        .fold(0.0, f64::max);
-    let extent = (extent / ROUNDED_M).ceil() * ROUNDED_M;
+    let (centre_m, extent) = centre_and_extent_m(columns);
     let secant = 1.0 / radians(study.pointing.zenith_deg).cos();
     let outer = study.budget.impact_radius_m.unwrap_or(extent + REACH_M * secant);
     let rings_m = vec![0.3 * outer, 0.6 * outer, outer];
@@ -194,7 +212,7 @@ fn throw(
         species,
         seed: study.seed,
         energy_gev: (energy_gev[0], energy_gev[1]),
-        index: THROWN_INDEX,
+        index: if cone_rad > 0.0 { BACKGROUND_INDEX } else { GAMMA_INDEX },
         pointing: pointing(study),
         cone_rad,
         centre_m,
@@ -207,4 +225,21 @@ fn throw(
 /// A stream for tables of the report, by purpose and number.
 pub fn table_stream(study: &Study, purpose: u64, number: u64) -> Stream {
     Stream::keyed(study.seed, Stage::Table, &[purpose, number])
+}
+
+/// Middle of the telescopes and distance of the outermost from it, m, both rounded outward to
+/// [`ROUNDED_M`].
+pub fn centre_and_extent_m(columns: &[Column]) -> ([f64; 2], f64) {
+    let middle = |axis: usize| {
+        let places = || columns.iter().map(|column| column.position_m[axis]);
+        let (low, high) =
+            (places().fold(f64::INFINITY, f64::min), places().fold(f64::NEG_INFINITY, f64::max));
+        (0.5 * (low + high) / ROUNDED_M).round() * ROUNDED_M
+    };
+    let centre_m = [middle(0), middle(1)];
+    let extent = columns
+        .iter()
+        .map(|c| (c.position_m[0] - centre_m[0]).hypot(c.position_m[1] - centre_m[1]))
+        .fold(0.0, f64::max);
+    (centre_m, (extent / ROUNDED_M).ceil() * ROUNDED_M)
 }

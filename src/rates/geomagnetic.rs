@@ -15,3 +15,8 @@
 pub fn vertical_cutoff_gv(geomagnetic_latitude_rad: f64) -> f64 {
     14.9 * geomagnetic_latitude_rad.cos().powi(4)
 }
+
+/// Latitude in a dipole from the inclination of the field: tan(latitude) = tan(inclination) / 2.
+pub fn dipole_latitude_rad(inclination_rad: f64) -> f64 {
+    (0.5 * inclination_rad.tan()).atan()
+}

@@ -14,7 +14,7 @@ pub mod threshold;
 pub use area::{EnergyBin, differential_rates, effective_areas};
 pub use dead_time::{dead_fraction, recorded_rate_hz};
 pub use edge::{angle_rates_hz, beyond_fraction, edge_fraction, ring_rates_hz};
-pub use geomagnetic::vertical_cutoff_gv;
+pub use geomagnetic::{dipole_latitude_rad, vertical_cutoff_gv};
 pub use rate::{Estimate, event_rates, median_energy_gev, rate, rate_hz, rate_sum_hz, word_rates};
 pub use spectrum::{Spectrum, SpectrumError, Term};
 pub use threshold::threshold_gev;

@@ -25,7 +25,7 @@ pub use provenance::{ranking_json, run_json};
 pub use result::{
     Approximation, AreaRow, Counter, DirectionRow, FinalistRow, FoundRow, KindRow, LayoutMap,
     LayoutRow, Model, OrderChange, OrderRow, PlacedTelescope, PlanResult, PoolReach, PoolRow,
-    Provenance, RateRow, ScanRow, SiteSummary, SourceRow, StageRow,
+    PrimaryRow, Provenance, RateRow, ScanRow, SiteSummary, SourceRow, StageRow,
 };
 pub use stage::{ReportError, check_destination, files, write_all, write_files};
 pub use tables::{Table, effective_area_table, light_pool_table, ranking_table, rate_table};

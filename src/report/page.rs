@@ -37,6 +37,7 @@ pub fn page(result: &PlanResult) -> String {
                     (figure(charts::site_map_chart(result), "The leading layout on its ground. Curves: where the light of a gamma ray of the layout's threshold energy, its core in the middle of the telescopes, stays under half and under a tenth of the density inside 100 m, on level ground.", "layouts.geojson"))
                     (super::checks::sections(result))
                     (super::thresholds::section(result))
+                    (primaries(result))
                     (telescopes(result))
                     (limits(result))
                     (cautions())
@@ -71,7 +72,9 @@ fn lead(result: &PlanResult) -> Markup {
         p {
             (site.name) ": " (figures::degrees(site.latitude_deg, 'N', 'S')) ", "
             (figures::degrees(site.longitude_deg, 'E', 'W')) ", " (format!("{:.0}", site.altitude_m)) " m above the sea, "
-            (format!("{:.0}", site.depth_g_cm2)) " g/cm² of air overhead. Pointing: zenith angle "
+            (format!("{:.0}", site.depth_g_cm2)) " g/cm² of air overhead"
+            @if site.cutoff_gv > 0.0 { ", vertical geomagnetic cutoff " (format!("{:.1}", site.cutoff_gv)) " GV" }
+            ". Pointing: zenith angle "
             (format!("{:.1}", site.zenith_deg)) "°, azimuth " (format!("{:.1}", site.azimuth_deg)) "° from north through east."
         }
     }
@@ -128,6 +131,38 @@ fn figure(svg: String, caption: &str, data: &str) -> Markup {
         figure {
             (PreEscaped(svg))
             figcaption { (caption) " Data: " a href=(data) { (data) } "." }
+        }
+    }
+}
+
+/// What each primary adds, for the leading layouts.
+fn primaries(result: &PlanResult) -> Markup {
+    let shown = result.ranking.iter().take(charts::SHOWN);
+    html! {
+        section {
+            h2 { "What triggers" }
+            p {
+                "Rates with standard errors from independent showers. The peak energy is where dR/dE is highest; peaks of cosmic "
+                "rays below the lowest thrown energy are shown as a dash. Recorded gamma rates have the readout's dead time taken off."
+            }
+            div.wide { table {
+                thead { tr {
+                    th.text { "Layout" } th.text { "Primary" } th { "Rate (Hz)" } th { "Peak energy (GeV)" }
+                    th { "Recorded gamma rays per hour" } th { "Dead time" }
+                } }
+                tbody { @for layout in shown {
+                    @for row in result.primaries.iter().filter(|row| row.layout == layout.layout) { tr {
+                        td.text { (row.layout) } td.text { (row.primary) }
+                        td { (figures::with_error(row.rate_hz, row.rate_error_hz)) }
+                        td { (figures::with_error(row.peak_energy_gev, row.peak_energy_error_gev)) }
+                        @if row.primary == "gamma" {
+                            td { (figures::short(layout.gamma_rate_per_hour)) }
+                            td { (figures::percent(layout.dead_fraction)) }
+                        } @else { td {} td {} }
+                    } }
+                } }
+            } }
+            p { "Data: " a href="primaries.csv" { "primaries.csv" } "." }
         }
     }
 }

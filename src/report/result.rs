@@ -11,6 +11,8 @@ pub struct PlanResult {
     pub site: SiteSummary,
     /// Layouts, best first.
     pub ranking: Vec<LayoutRow>,
+    /// Rate and peak energy of each primary in each layout.
+    pub primaries: Vec<PrimaryRow>,
     /// Trigger-level effective areas by layout, primary and energy bin.
     pub effective_areas: Vec<AreaRow>,
     /// Differential trigger rates by layout, primary and energy bin.
@@ -92,6 +94,8 @@ pub struct SiteSummary {
     pub altitude_m: f64,
     /// Vertical depth of air above it, g/cm2.
     pub depth_g_cm2: f64,
+    /// Vertical geomagnetic cutoff, GV; zero if the study states no field.
+    pub cutoff_gv: f64,
     /// Pointing: zenith angle, degrees.
     pub zenith_deg: f64,
     /// Pointing: azimuth from north through east, degrees.
@@ -135,6 +139,10 @@ pub struct LayoutRow {
     pub threshold_error_gev: f64,
     /// Rate of chance coincidences of the night sky, Hz.
     pub accidental_rate_hz: f64,
+    /// Recorded events of the reference source in an hour, dead time taken off.
+    pub gamma_rate_per_hour: f64,
+    /// Share of the time that the readout is dead; zero if the study states no dead time.
+    pub dead_fraction: f64,
     /// Cost in the study's unit.
     pub cost: f64,
     /// Rate of the reference source over cost, Hz; NaN without a cost.
@@ -284,6 +292,23 @@ pub struct DirectionRow {
     pub events: usize,
     /// Triggered events.
     pub triggered: usize,
+}
+
+/// Trigger rate of one primary in one layout.
+#[derive(Clone, Debug, Default, PartialEq)]
+pub struct PrimaryRow {
+    /// Layout.
+    pub layout: String,
+    /// Primary.
+    pub primary: String,
+    /// Rate, Hz.
+    pub rate_hz: f64,
+    /// Its standard error, Hz.
+    pub rate_error_hz: f64,
+    /// Energy at which the differential rate peaks, GeV.
+    pub peak_energy_gev: f64,
+    /// Its standard error, GeV.
+    pub peak_energy_error_gev: f64,
 }
 
 /// An effective area in one bin of true energy.

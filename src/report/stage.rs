@@ -73,6 +73,7 @@ pub fn check_destination(folder: &Path) -> Result<(), ReportError> {
 pub fn files(result: &PlanResult) -> Result<Vec<(String, Vec<u8>)>, ReportError> {
     let both = [
         tables::ranking_table(result),
+        tables::primary_table(result),
         tables::effective_area_table(result),
         tables::rate_table(result),
         tables::light_pool_table(result),

@@ -99,6 +99,8 @@ pub fn ranking_table(result: &PlanResult) -> Table {
         .number("threshold_gev", "GeV", number(|row| row.threshold_gev))
         .number("threshold_error_gev", "GeV", number(|row| row.threshold_error_gev))
         .number("accidental_rate_hz", "Hz", number(|row| row.accidental_rate_hz))
+        .number("gamma_rate_per_hour", "1/h", number(|row| row.gamma_rate_per_hour))
+        .number("dead_fraction", "1", number(|row| row.dead_fraction))
         .number("cost", "study's unit", number(|row| row.cost))
         .number("rate_per_cost_hz", "Hz per study's unit", number(|row| row.rate_per_cost_hz))
         .number("rate_per_root_background", "Hz^(1/2)", number(|row| row.rate_per_root_background))
@@ -106,6 +108,18 @@ pub fn ranking_table(result: &PlanResult) -> Table {
         .number("order_probability", "1", number(|row| row.order_probability))
         .number("score", "study's choice", number(|row| row.score))
         .number("score_error", "study's choice", number(|row| row.score_error))
+}
+
+/// Rate and peak energy of each primary in each layout.
+pub fn primary_table(result: &PlanResult) -> Table {
+    let rows = &result.primaries;
+    Table::new("primaries")
+        .text("layout", rows.iter().map(|row| row.layout.clone()).collect())
+        .text("primary", rows.iter().map(|row| row.primary.clone()).collect())
+        .number("rate_hz", "Hz", rows.iter().map(|row| row.rate_hz))
+        .number("rate_error_hz", "Hz", rows.iter().map(|row| row.rate_error_hz))
+        .number("peak_energy_gev", "GeV", rows.iter().map(|row| row.peak_energy_gev))
+        .number("peak_energy_error_gev", "GeV", rows.iter().map(|row| row.peak_energy_error_gev))
 }
 
 /// Effective areas by layout, primary and energy bin.

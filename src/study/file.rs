@@ -125,6 +125,7 @@ fn resolved(
     let sources = sky::sources(&root)?;
     let backgrounds = sky::backgrounds(&root)?;
     let budget = budget(root.section("budget")?)?;
+    let dead_time_us = dead_time_us(root.section_if_any("readout")?)?;
     let ranking = ranking(root.section_if_any("ranking")?, &tariff)?;
     let robustness = root.section_if_any("robustness")?.map(robustness).transpose()?;
     root.finish()?;
@@ -150,6 +151,7 @@ fn resolved(
         pointing,
         sources,
         backgrounds,
+        dead_time_us,
         budget,
         ranking,
         robustness,
@@ -167,6 +169,13 @@ fn name(path: &Path, root: &Section<'_>) -> Result<String, StudyError> {
         return Err(root.wrong("name", problem));
     }
     Ok(name)
+}
+
+fn dead_time_us(section: Option<Section<'_>>) -> Result<f64, StudyError> {
+    let Some(section) = section else { return Ok(0.0) };
+    let time = section.number("dead_time_us", limits(0.0, 1e6, "us"))?;
+    section.finish()?;
+    Ok(time)
 }
 
 fn budget(section: Section<'_>) -> Result<Budget, StudyError> {

@@ -46,6 +46,7 @@ fn kind(section: &Section<'_>, files: &mut Companions) -> Result<TelescopeKind, 
             limits(0.0, 1.0, "degrees per degree off axis"),
             0.0,
         )?,
+        mirror_delay_ns: section.number_or("mirror_delay_ns", limits(0.0, 100.0, "ns"), 0.0)?,
         camera: camera(section)?,
         light_guide_efficiency: section.number_or("light_guide_efficiency", share, 1.0)?,
         sensor: curve(

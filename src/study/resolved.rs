@@ -52,6 +52,8 @@ pub struct Study {
     pub sources: Vec<Source>,
     /// Background species.
     pub backgrounds: Vec<Background>,
+    /// Dead time after each recorded event, us; zero if not stated.
+    pub dead_time_us: f64,
     /// How much to simulate.
     pub budget: Budget,
     /// How to rank.
@@ -212,6 +214,10 @@ pub struct Pointing {
     pub zenith_deg: f64,
     /// Azimuth from north through east, degrees.
     pub azimuth_deg: f64,
+    /// Angle of the source from the pointing, degrees.
+    pub source_offset_deg: f64,
+    /// Where the source stands in the camera: from up, towards the camera's x axis, degrees.
+    pub source_bearing_deg: f64,
     /// Half-angle of the cone that backgrounds come from, degrees.
     pub cone_half_angle_deg: f64,
 }

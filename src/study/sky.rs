@@ -118,8 +118,18 @@ pub(super) fn pointing(
     let widest = kinds.iter().map(|kind| 0.5 * kind.camera.field_of_view_deg).fold(0.0, f64::max);
     let cone = limits(0.1, 30.0, "degrees");
     let cone_half_angle_deg = section.number_or("cone_half_angle_deg", cone, widest + 3.0)?;
+    let offset = limits(0.0, 15.0, "degrees");
+    let source_offset_deg = section.number_or("source_offset_deg", offset, 0.0)?;
+    let bearing = limits(-360.0, 360.0, "degrees");
+    let source_bearing_deg = section.number_or("source_bearing_deg", bearing, 0.0)?;
     section.finish()?;
-    Ok(Pointing { zenith_deg, azimuth_deg, cone_half_angle_deg })
+    Ok(Pointing {
+        zenith_deg,
+        azimuth_deg,
+        source_offset_deg,
+        source_bearing_deg,
+        cone_half_angle_deg,
+    })
 }
 
 /// Reads `[[source]]`.

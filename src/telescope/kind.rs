@@ -46,6 +46,10 @@ pub struct TelescopeKind {
     pub point_spread_deg: f64,
     /// Growth of that width per degree off axis, added in quadrature, deg/deg.
     pub point_spread_growth: f64,
+    /// Full width of the arrival times that the mirror adds, flat, ns: zero for a paraboloid,
+    /// R^2 / (2 f c) for facets on a sphere of radius f, aperture radius R and focal length f (light
+    /// at r comes early by r^2 / (2 f c), and area grows as r^2; Davies & Cotton 1957, Sol. Energy 1, 16).
+    pub mirror_delay_ns: f64,
     /// The camera.
     pub camera: Camera,
     /// Fraction of light on the camera that light guides bring to the sensors.
@@ -105,6 +109,10 @@ impl TelescopeKind {
         if !(0.0..=2.0).contains(&self.point_spread_deg) {
             let (field, value) = ("point_spread_deg", self.point_spread_deg);
             return Err(KindError { field, value, allowed: "0 to 2" });
+        }
+        if !(0.0..=100.0).contains(&self.mirror_delay_ns) {
+            let (field, value) = ("mirror_delay_ns", self.mirror_delay_ns);
+            return Err(KindError { field, value, allowed: "0 to 100" });
         }
         if !(0.0..=2.0).contains(&self.pulse_spread) {
             let (field, value) = ("pulse_spread", self.pulse_spread);

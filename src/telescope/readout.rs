@@ -252,9 +252,12 @@ impl<'a> Readout<'a> {
                 self.touched.push(pixel as u16);
             }
             let gain = self.gain(quantum.weight, stream);
-            self.per_pixel[pixel].push((quantum.time_ns, quantum.weight * gain));
+            let delay = kind.mirror_delay_ns;
+            let delay = if delay > 0.0 { delay * (stream.uniform() - 0.5) } else { 0.0 };
+            let time_ns = quantum.time_ns + delay as f32;
+            self.per_pixel[pixel].push((time_ns, quantum.weight * gain));
             sum += quantum.weight;
-            time += quantum.weight * quantum.time_ns;
+            time += quantum.weight * time_ns;
         }
         (sum, time)
     }

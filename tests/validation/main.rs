@@ -5,6 +5,7 @@ mod cascade;
 mod hadronic;
 mod layout;
 mod light;
+mod published;
 mod rates;
 mod refraction;
 mod telescope;

@@ -76,7 +76,7 @@ fn validate_all_nucleon_flux_pdg2022() {
 #[test]
 fn validate_proton_flux_at_1_tev_of_five_sources() {
     for (name, expected, uncertainty) in [
-        ("proton", 0.096, 0.005),
+        ("proton-average", 0.096, 0.005),
         ("proton-hegra-1999", 0.11, 0.05),
         ("proton-fegan-2004", 0.11, 0.001),
         ("proton-ams-2015", 0.0764, 0.0002),

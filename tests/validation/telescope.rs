@@ -17,6 +17,7 @@ fn twelve_metre() -> TelescopeKind {
         obscuration: 0.0,
         reflectivity: Curve::constant(1.0, (300.0, 650.0)),
         point_spread_deg: 0.03,
+        mirror_delay_ns: 0.0,
         point_spread_growth: 0.0,
         camera: Camera::new(PixelShape::Hexagonal, 0.15, 3.6).unwrap(),
         light_guide_efficiency: ROUND_IN_HEXAGON,

@@ -31,6 +31,7 @@ fn made_up() -> PlanResult {
             longitude_deg: 17.25,
             altitude_m: 2_200.0,
             depth_g_cm2: 795.0,
+            cutoff_gv: 9.5,
             zenith_deg: 20.0,
             azimuth_deg: 180.0,
             boundary_enu_m: vec![
@@ -122,6 +123,8 @@ fn add_layout(result: &mut PlanResult, index: usize) {
         threshold_gev: 100.0 + 10.0 * index as f64,
         threshold_error_gev: 6.0,
         accidental_rate_hz: if index == 12 { f64::NAN } else { 1e-3 },
+        gamma_rate_per_hour: 3_600.0 * rate,
+        dead_fraction: 0.0,
         cost: 12.4,
         rate_per_cost_hz: 0.1,
         rate_per_root_background: 0.02,

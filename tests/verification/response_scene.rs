@@ -20,6 +20,7 @@ fn kind(name: &str, mirror_area_m2: f64) -> TelescopeKind {
         obscuration: 0.1,
         reflectivity: Curve::constant(0.8, (300.0, 600.0)),
         point_spread_deg: 0.04,
+        mirror_delay_ns: 0.0,
         point_spread_growth: 0.0,
         camera: Camera::new(PixelShape::Hexagonal, 0.2, 4.0).unwrap(),
         light_guide_efficiency: 0.9,

@@ -13,6 +13,7 @@ pub fn kind(shape: PixelShape, pitch_deg: f64, field_of_view_deg: f64) -> Telesc
         obscuration: 0.0,
         reflectivity: Curve::constant(0.85, (200.0, 1_000.0)),
         point_spread_deg: 0.0,
+        mirror_delay_ns: 0.0,
         point_spread_growth: 0.0,
         camera: Camera::new(shape, pitch_deg, field_of_view_deg).unwrap(),
         light_guide_efficiency: 0.8,
