@@ -42,8 +42,7 @@ fn main() -> Result<(), Box<dyn std::error::Error>> {
             bearing_rad: None,
             showers,
             seed: 3,
-        })
-        .ok_or("not electromagnetic")?;
+        });
         let model = LightModel::new(
             &LightSettings {
                 atmosphere: &air,

@@ -5,7 +5,7 @@ use nalgebra::Vector3;
 use rayon::prelude::*;
 
 use crate::atmosphere::{Atmosphere, Extinction, TransmissionTable};
-use crate::light::collect::pool::{PoolDensity, PoolRequest, pool_density};
+use crate::light::collect::pool::{PoolRequest, pool_density};
 use crate::light::{
     Detector, LightModel, LightSettings, ShowerLight, View, column::Transmission, parts,
 };
@@ -111,7 +111,7 @@ pub(super) fn run(arguments: &PoolArguments) -> Result<(), Failure> {
     };
     let rows = match arguments.engine {
         EngineChoice::Profile => profile(arguments, &air, &through),
-        EngineChoice::Cascade => cascade(arguments, &air, &through)?,
+        EngineChoice::Cascade => cascade(arguments, &air, &through),
     };
     print(&text(arguments, &rows))
 }
@@ -145,7 +145,7 @@ fn cascade(
     arguments: &PoolArguments,
     air: &Atmosphere,
     through: &Transmission<'_>,
-) -> Result<Vec<[f64; 3]>, Failure> {
+) -> Vec<[f64; 3]> {
     let request = PoolRequest {
         primary: primary(arguments),
         atmosphere: air,
@@ -158,10 +158,7 @@ fn cascade(
         showers: arguments.showers,
         seed: arguments.seed,
     };
-    let found = pool_density(&request).as_ref().map(PoolDensity::summary);
-    found.ok_or_else(|| {
-        Failure::Input("--engine cascade takes a gamma, an electron or a positron".into())
-    })
+    pool_density(&request).summary()
 }
 
 /// Mean, error of the mean and RMS between showers at each distance, by the fast engine.

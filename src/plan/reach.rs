@@ -13,7 +13,7 @@ use super::Planned;
 /// Edges of the pilot's rings beyond the outermost telescope, m at zenith.
 const PILOT_M: [f64; 7] = [60.0, 140.0, 240.0, 380.0, 600.0, 950.0, 1_500.0];
 /// Words in each ring of the pilot, for each hundred words of the throw, and at least.
-const PILOT_PERCENT: usize = 10;
+const PILOT_PERCENT: usize = 15;
 const PILOT_LEAST: usize = 10;
 /// And at most: enough to choose rings by.
 const PILOT_MOST: usize = 64;

@@ -327,6 +327,12 @@ fn cone_note(weighted: &Weighted, plane: &[u64]) -> String {
     let radii: Vec<f64> = (1..=RINGS).map(|ring| step * ring as f64).collect();
     let (name, degrees) = (sample.species, sample.throw.cone_rad.to_degrees());
     let beyond = beyond_fraction(&radii, &by_angle);
+    if !beyond.is_finite() {
+        return format!(
+            "{name}: directions thrown to {degrees:.1} degrees from the pointing; too few triggers near the \
+             edge to say what lies beyond"
+        );
+    }
     let much = if beyond > 0.02 { "; widen cone_half_angle_deg" } else { "" };
     format!(
         "{name}: directions thrown to {degrees:.1} degrees from the pointing; {:.1} % of the leading \

@@ -262,7 +262,6 @@ fn density(energy_gev: f64, showers: u64, east_ut: f64, distances_m: &[f64]) -> 
         showers,
         seed: 5,
     })
-    .expect("a photon is electromagnetic")
     .summary()
 }
 

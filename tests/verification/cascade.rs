@@ -223,8 +223,7 @@ fn verify_discs_and_rings_agree() {
         bearing_rad: None,
         showers,
         seed: 7,
-    })
-    .expect("a photon is electromagnetic");
+    });
     let environment = Environment::new(&air, observer, field_ut, light_cuts(&air, observer));
     let collector = Collector::new(&CollectSettings {
         atmosphere: &air,
@@ -287,7 +286,7 @@ fn verify_pool_does_not_depend_on_threads() {
                 showers: 5,
                 seed: 8,
             })
-            .map(|pool| pool.showers_m2)
+            .showers_m2
         })
     };
     assert_eq!(run(1), run(2));

@@ -7,6 +7,7 @@
 pub mod pads;
 pub mod pool;
 pub mod rays;
+pub mod shower;
 pub mod yields;
 
 pub use pads::{

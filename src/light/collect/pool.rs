@@ -12,16 +12,17 @@ use crate::light::column::{Detector, REFERENCE_NM, Transmission};
 use crate::numerics::{Stage, Stream};
 use crate::shower::cascade::air::AirTable;
 use crate::shower::cascade::{
-    CascadeParticle, CascadeSpecies, Cuts, Environment, TrackSink, TrackStep, transport,
+    CascadeParticle, CascadeSpecies, Cuts, Environment, TrackSink, TrackStep,
 };
 use crate::shower::{Direction, Primary, Species};
 
 use super::rays::{Ray, Window, emit};
+use super::shower::Descent;
 use super::yields::Yields;
 
 /// What is asked for.
 pub struct PoolRequest<'a> {
-    /// The primary: gamma, electron or positron.
+    /// The primary.
     pub primary: Primary,
     /// The air.
     pub atmosphere: &'a Atmosphere,
@@ -138,9 +139,7 @@ pub fn incoming(
 /// Densities of showers about their axis.
 ///
 /// Every shower has its own random stream: the result does not depend on the number of threads.
-/// `None` for primaries that are not electromagnetic.
-pub fn pool_density(request: &PoolRequest<'_>) -> Option<PoolDensity> {
-    let species = cascade_species(request.primary.species)?;
+pub fn pool_density(request: &PoolRequest<'_>) -> PoolDensity {
     let cuts = light_cuts(request.atmosphere, request.observer_altitude_m);
     let environment =
         Environment::new(request.atmosphere, request.observer_altitude_m, request.field_ut, cuts);
@@ -151,6 +150,7 @@ pub fn pool_density(request: &PoolRequest<'_>) -> Option<PoolDensity> {
         request.primary.direction.zenith_rad,
         core::slice::from_ref(&request.detector),
     );
+    let descent = Descent::new(request.atmosphere, &environment, request.primary.direction);
     let energy_gev = request.primary.energy_gev;
     let showers_m2 = (0..request.showers)
         .into_par_iter()
@@ -158,15 +158,8 @@ pub fn pool_density(request: &PoolRequest<'_>) -> Option<PoolDensity> {
             let key = [energy_gev.to_bits(), shower];
             let mut stream = Stream::keyed(request.seed, Stage::Shower, &key);
             let light = Stream::keyed(request.seed, Stage::Image, &key);
-            let (particle, _) = incoming(
-                species,
-                energy_gev,
-                request.primary.direction,
-                request.observer_altitude_m,
-                request.atmosphere,
-            );
             let mut rings = Rings::new(request, &environment.air, &yields, light);
-            transport(vec![particle], &environment, &mut stream, &mut rings);
+            descent.shower(&request.primary, &mut stream, &mut rings);
             rings.densities_m2()
         })
         .collect();
@@ -177,7 +170,7 @@ pub fn pool_density(request: &PoolRequest<'_>) -> Option<PoolDensity> {
         drawn_share(energy_gev) * sector * (outer * outer - inner * inner)
     };
     let drawn_m2 = request.distances_m.iter().map(drawn).collect();
-    Some(PoolDensity { distances_m: request.distances_m.to_vec(), showers_m2, drawn_m2 })
+    PoolDensity { distances_m: request.distances_m.to_vec(), showers_m2, drawn_m2 }
 }
 
 /// A sink that counts quanta in rings of the plane through the core across the axis.
