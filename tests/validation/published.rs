@@ -69,8 +69,8 @@ fn validate_four_12m_telescopes_before_and_after_veritas2013() {
 }
 
 /// One 75 m2 telescope: rate of cosmic rays at the threshold where the gamma rate peaks at 238 GeV,
-/// 20.9 Hz (the setting of 38 mV) within 40 %; slope of the rate with the threshold -2.8 +- 0.4 and two of
-/// our errors.
+/// 20.9 Hz (the setting of 38 mV) within 40 %; slope of the rate with the threshold -2.8 +- 0.4 and
+/// two of our errors.
 ///
 /// The scale in photoelectrons is not fixed by the wall of accidentals here: ours stands at 4.3
 /// photoelectrons, where the published one of 33.5 mV stands at 6 on the scale of the same
