@@ -106,8 +106,6 @@ struct Planned<'a> {
     members: Vec<Vec<usize>>,
     gamma: Weighted,
     backgrounds: Vec<Weighted>,
-    /// Share of the layouts' rates beyond the thrown radius: gamma, then each background.
-    beyond: Vec<f64>,
 }
 
 /// Simulates a study, or reads its stored tables, scores its layouts and ranks them.
@@ -172,7 +170,7 @@ fn simulate<'a>(
     let mut throws: Vec<_> = gamma.chain(backgrounds).collect();
     let spectra: Vec<Spectrum> =
         core::iter::once(gamma_spectrum).chain(background_spectra).collect();
-    let planned = |throws: &[(Throw, usize)], stage: &str, beyond: Vec<f64>| {
+    let planned = |throws: &[(Throw, usize)], stage: &str| {
         let words = throws.iter().map(|(throw, repetitions)| throw.word_count() * repetitions);
         progress.stage(stage, words.sum::<usize>() as u64);
         let under = (light, sky_per_ns.clone());
@@ -190,30 +188,22 @@ fn simulate<'a>(
             members: members.clone(),
             gamma: weighted.next().expect("a throw gives a sample"),
             backgrounds: weighted.collect(),
-            beyond,
         };
         planned.with_thresholds()
     };
-    let mut beyond = vec![f64::NAN; throws.len()];
-    if study.budget.impact_radius_m.is_none() {
-        let (_, extent_m) = setup::centre_and_extent_m(&columns);
-        let pilots: Vec<_> = throws
-            .iter()
-            .map(|(throw, count)| (reach::pilot(throw, *count, extent_m), 1))
-            .collect();
-        let pilot = planned(&pilots, "pilot showers", beyond.clone())?;
-        let weighted = core::iter::once(&pilot.gamma).chain(&pilot.backgrounds);
-        for (place, weighted) in weighted.enumerate() {
-            let layouts = 0..study.layouts.len();
-            let planes: Vec<Vec<u64>> = layouts
-                .map(|layout| pilot.vote(&weighted.sample, layout, &pilot.thresholds_pe[layout]))
-                .collect();
-            if let Some(fit) = reach::fit(&weighted.sample, &weighted.spectrum, &planes) {
-                (throws[place].0.rings_m, beyond[place]) = (fit.rings_m, fit.beyond);
-            }
+    let mut found = planned(&throws, "showers")?;
+    for _ in 0..reach::ENLARGEMENTS {
+        let beyond: Vec<f64> = found.primaries().map(|weighted| found.beyond(weighted)).collect();
+        let stated = study.budget.impact_radius_m.is_some();
+        if stated || !beyond.iter().any(|share| *share > reach::BEYOND) {
+            break;
         }
+        for ((throw, _), _) in throws.iter_mut().zip(beyond).filter(|(_, s)| *s > reach::BEYOND) {
+            throw.rings_m.iter_mut().for_each(|radius| *radius *= reach::GROWTH);
+        }
+        found = planned(&throws, "showers over a wider area")?;
     }
-    planned(&throws, "showers", beyond)
+    Ok(found)
 }
 
 /// Simulates a study's backgrounds, and as few gammas as can be: for rates of showers only.

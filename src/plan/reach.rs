@@ -1,111 +1,86 @@
-//! How far from the array cores must be thrown, found by a pilot run.
+//! How far from the array cores must be thrown, and what lies beyond.
 //!
-//! A small throw over wide rings tells where each layout's rate comes from. The thrown radius is the
-//! least that leaves less than a hundredth of the layouts' rates outside; the rings inside are those
-//! that make the error smallest for equal numbers of showers in each: the variance goes with the sum
-//! over rings of area x rate.
+//! Rings of impact distance begin at a reach that holds for usual telescopes. If the rate of the
+//! layouts, continued beyond the outermost ring, shows more than [`BEYOND`] of it outside, the rings
+//! are enlarged and the events thrown again. Tables of events are named by their throw, so that
+//! the same study finds its table again.
 
-use crate::rates::{self, Spectrum, beyond_fraction, ring_rates_hz};
-use crate::response::{Sample, Throw};
+use crate::rates::{self, beyond_fraction, ring_rates_hz};
 
-use super::Planned;
+use super::{Planned, Weighted};
 
-/// Edges of the pilot's rings beyond the outermost telescope, m at zenith.
-const PILOT_M: [f64; 7] = [60.0, 140.0, 240.0, 380.0, 600.0, 950.0, 1_500.0];
-/// Words in each ring of the pilot, for each hundred words of the throw, and at least.
-const PILOT_PERCENT: usize = 15;
-const PILOT_LEAST: usize = 10;
-/// And at most: enough to choose rings by.
-const PILOT_MOST: usize = 64;
-/// Share of a rate that may lie beyond the thrown radius.
-pub const BEYOND: f64 = 0.01;
+/// Outer radii of the rings beyond the outermost telescope, m at zenith: gamma rays, and cosmic
+/// rays, of which single muons and fragments far from the core trigger too.
+const GAMMA_M: [f64; 3] = [80.0, 220.0, 420.0];
+const DIFFUSE_M: [f64; 3] = [80.0, 280.0, 620.0];
+/// Share of a rate that may lie beyond the outermost ring.
+pub const BEYOND: f64 = 0.02;
+/// Factor of one enlargement.
+pub const GROWTH: f64 = 1.5;
+/// Enlargements at most; after them the report says what is left.
+pub const ENLARGEMENTS: usize = 3;
+/// Words with triggers in the outermost ring below which it says nothing.
+const LEAST_WORDS: usize = 12;
 
-/// Index of the hardest gamma-ray spectrum that the thrown area is made for.
-const HARDEST_INDEX: f64 = 1.5;
-
-/// Rings fitted to where the triggers come from, and the share of the layouts' rates that the pilot
-/// saw beyond the outermost, on average.
-pub struct Fit {
-    /// Outer radii, m.
-    pub rings_m: Vec<f64>,
-    /// Share beyond.
-    pub beyond: f64,
-}
-
-/// The throw of the pilot for a throw repeated `repetitions` times, about telescopes within
-/// `extent_m` of its centre.
-pub fn pilot(throw: &Throw, repetitions: usize, extent_m: f64) -> Throw {
-    let secant = 1.0 / throw.pointing.zenith_rad.cos();
-    let rings_m: Vec<f64> = PILOT_M.iter().map(|edge| extent_m + edge * secant).collect();
-    let all = throw.word_count() * repetitions;
-    let words = (all * PILOT_PERCENT / 100 / rings_m.len()).clamp(PILOT_LEAST, PILOT_MOST);
-    Throw { rings_m, words, ..throw.clone() }
-}
-
-/// Three rings by a pilot's sample and the planes of the layouts; `None` if nothing triggered.
-///
-/// The radius must hold for the spectrum and, for gamma rays, for a hard one too: areas at the
-/// highest energies must not end at the thrown radius. The rings inside suit the spectrum.
-pub fn fit(sample: &Sample, spectrum: &Spectrum, planes: &[Vec<u64>]) -> Option<Fit> {
-    let edges = &sample.throw.rings_m;
-    let by_ring = |spectrum: &Spectrum| -> Vec<Vec<f64>> {
-        let rates = planes.iter().map(|plane| {
-            let words = rates::word_rates(&sample.words, plane, spectrum);
-            ring_rates_hz(&sample.words, &words, edges.len())
-        });
-        rates.filter(|rings| rings.iter().sum::<f64>() > 0.0).collect()
-    };
-    let rates = by_ring(spectrum);
-    if rates.is_empty() {
-        return None;
-    }
-    let hard = by_ring(&Spectrum::power_law(1.0, 1.0, HARDEST_INDEX, None));
-    let outside = |last: usize| {
-        let of = |rates: &[Vec<f64>]| {
-            let shares = rates.iter().map(|rings| share_outside(edges, rings, last));
-            shares.sum::<f64>() / rates.len() as f64
-        };
-        let diffuse = sample.throw.cone_rad > 0.0;
-        if diffuse { of(&rates) } else { of(&rates).max(of(&hard)) }
-    };
-    let last = (2..edges.len()).find(|&last| outside(last) < BEYOND).unwrap_or(edges.len() - 1);
-    let areas = sample.throw.ring_areas_m2();
-    let cost = |from: usize, to: usize| -> f64 {
-        let area: f64 = areas[from..to].iter().sum();
-        let shares = rates.iter().map(|r| r[from..to].iter().sum::<f64>() / r.iter().sum::<f64>());
-        area * shares.sum::<f64>()
-    };
-    let splits = (1..last).flat_map(|a| (a + 1..=last).map(move |b| (a, b)));
-    let total = |&(a, b): &(usize, usize)| cost(0, a) + cost(a, b) + cost(b, last + 1);
-    let (first, second) = splits.min_by(|x, y| total(x).total_cmp(&total(y)))?;
-    let rings_m = vec![edges[first - 1], edges[second - 1], edges[last]];
-    Some(Fit { rings_m, beyond: outside(last) })
-}
-
-/// Share of a rate from beyond ring `last`: the pilot's outer rings, and beyond the pilot the
-/// exponential continuation.
-fn share_outside(edges: &[f64], rings: &[f64], last: usize) -> f64 {
-    let total: f64 = rings.iter().sum();
-    let farther = beyond_fraction(edges, rings);
-    let farther = if farther.is_finite() { farther } else { 0.0 };
-    rings[last + 1..].iter().sum::<f64>() / total + farther
+/// Rings for telescopes within `extent_m` of the centre, m.
+pub fn rings_m(extent_m: f64, zenith_rad: f64, diffuse: bool) -> Vec<f64> {
+    let reach = if diffuse { DIFFUSE_M } else { GAMMA_M };
+    reach.iter().map(|edge| extent_m + edge / zenith_rad.cos()).collect()
 }
 
 impl Planned<'_> {
+    /// All primaries: the gamma rays, then the backgrounds.
+    pub(super) fn primaries(&self) -> impl Iterator<Item = &Weighted> {
+        core::iter::once(&self.gamma).chain(&self.backgrounds)
+    }
+
+    /// Share of the layouts' rate beyond the outermost ring, by exponential continuation; NaN if
+    /// too few triggers say so.
+    pub(super) fn beyond(&self, weighted: &Weighted) -> f64 {
+        let sample = &weighted.sample;
+        let radii = &sample.throw.rings_m;
+        let mut rings = vec![0.0; radii.len()];
+        let mut outermost = 0;
+        for layout in 0..self.study.layouts.len() {
+            let unset =
+                |&column: &usize| self.thresholds_pe[layout][self.columns[column].kind].is_nan();
+            if self.members[layout].len() > MOST_VOTERS || self.members[layout].iter().any(unset) {
+                continue;
+            }
+            let plane = self.vote(sample, layout, &self.thresholds_pe[layout]);
+            let words = rates::word_rates(&sample.words, &plane, &weighted.spectrum);
+            let of_rings = ring_rates_hz(&sample.words, &words, radii.len());
+            rings.iter_mut().zip(of_rings).for_each(|(sum, rate)| *sum += rate);
+            let last = sample.words.iter().zip(&plane);
+            let lit = last.filter(|(word, bits)| word.ring + 1 == radii.len() && **bits != 0);
+            outermost = lit.count().max(outermost);
+        }
+        if outermost < LEAST_WORDS {
+            return f64::NAN;
+        }
+        let total: f64 = rings.iter().sum();
+        // A density that does not fall says only that the outermost ring is not the end.
+        let share = rings.last().map_or(0.0, |last| last / total);
+        let beyond = beyond_fraction(radii, &rings);
+        if beyond.is_finite() { beyond } else { share }
+    }
+
     /// What the reader must know of the throw: cores beyond the thrown radius.
-    pub(super) fn reach_note(&self, place: usize) -> String {
-        let weighted = if place == 0 { &self.gamma } else { &self.backgrounds[place - 1] };
-        let throw = &weighted.sample.throw;
-        let radius = throw.rings_m.last().copied().unwrap_or(0.0);
-        let beyond = self.beyond[place];
-        let name = weighted.sample.species;
+    pub(super) fn reach_note(&self, weighted: &Weighted) -> String {
+        let radius = weighted.sample.throw.rings_m.last().copied().unwrap_or(0.0);
+        let (name, beyond) = (weighted.sample.species, self.beyond(weighted));
         if beyond.is_nan() {
-            format!("{name}: cores thrown to {radius:.0} m, as the study asks")
+            format!(
+                "{name}: cores thrown to {radius:.0} m; too few triggers far out to say what lies beyond"
+            )
         } else {
             format!(
-                "{name}: cores thrown to {radius:.0} m; a pilot run saw {:.1} % of the layouts' rates beyond",
+                "{name}: cores thrown to {radius:.0} m; {:.1} % of the layouts' rate lies beyond by extrapolation",
                 100.0 * beyond
             )
         }
     }
 }
+
+/// Layouts of more telescopes than this are grounds for a search, not layouts.
+const MOST_VOTERS: usize = 255;

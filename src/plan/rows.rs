@@ -296,9 +296,9 @@ fn warnings(planned: &Planned<'_>, scored: &[Scored], ranked: &[Compared]) -> Ve
     let all = [(&planned.gamma, &leader.gamma_plane, leader.gamma)].into_iter().chain(
         planned.backgrounds.iter().zip(&leader.backgrounds).map(|(w, (p, _, e))| (w, p, *e)),
     );
-    for (place, (weighted, plane, estimate)) in all.enumerate() {
+    for (weighted, plane, estimate) in all {
         let (name, throw) = (weighted.sample.species, &weighted.sample.throw);
-        warnings.push(planned.reach_note(place));
+        warnings.push(planned.reach_note(weighted));
         if throw.cone_rad > 0.0 {
             warnings.push(cone_note(weighted, plane));
         }

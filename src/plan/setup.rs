@@ -17,6 +17,8 @@ use crate::study::{self, Study};
 use crate::telescope::{Accidental, QuietError, TelescopeKind, Threshold};
 use crate::units::radians;
 
+use super::reach;
+
 /// Slabs of air: converged to 1 % (test `verify_pool_converges_in_slabs_and_samples`).
 const SLABS: usize = 36;
 /// Gamma energies are thrown as E to this negative power: flatter than a source, so that areas at
@@ -25,8 +27,6 @@ const GAMMA_INDEX: f64 = 1.5;
 /// The same for backgrounds: near the flux times the root of the trigger probability, which makes
 /// the error of the rate smallest.
 const BACKGROUND_INDEX: f64 = 2.0;
-/// How far from the outermost telescope cores are thrown before a pilot run says better, m at zenith.
-const REACH_M: f64 = 420.0;
 
 /// Centre and extent of the telescopes are rounded to this, m, so that a pad more or less does not
 /// move the throw and a stored table can be extended.
@@ -202,9 +202,11 @@ fn throw(
     columns: &[Column],
 ) -> (Throw, usize) {
     let (centre_m, extent) = centre_and_extent_m(columns);
-    let secant = 1.0 / radians(study.pointing.zenith_deg).cos();
-    let outer = study.budget.impact_radius_m.unwrap_or(extent + REACH_M * secant);
-    let rings_m = vec![0.3 * outer, 0.6 * outer, outer];
+    let zenith_rad = radians(study.pointing.zenith_deg);
+    let rings_m = match study.budget.impact_radius_m {
+        Some(outer) => vec![0.3 * outer, 0.6 * outer, outer],
+        None => reach::rings_m(extent, zenith_rad, cone_rad > 0.0),
+    };
     let words = (showers as usize).div_ceil(SHOWERS_PER_WORD * rings_m.len()).max(8);
     let repetitions = words.div_ceil(REPEATED_WORDS);
     let words = words.min(REPEATED_WORDS);
@@ -229,7 +231,7 @@ pub fn table_stream(study: &Study, purpose: u64, number: u64) -> Stream {
 
 /// Middle of the telescopes and distance of the outermost from it, m, both rounded outward to
 /// [`ROUNDED_M`].
-pub fn centre_and_extent_m(columns: &[Column]) -> ([f64; 2], f64) {
+fn centre_and_extent_m(columns: &[Column]) -> ([f64; 2], f64) {
     let middle = |axis: usize| {
         let places = || columns.iter().map(|column| column.position_m[axis]);
         let (low, high) =

@@ -20,6 +20,8 @@ fn pair(threshold: &str, trigger: &str, window_ns: f64, showers: usize) -> Study
     );
     let text = format!("{}{layout}{}{trigger}", &TINY[..start], &TINY[end..]);
     let text = text.replace("quiet_rate_hz = 1000", threshold);
+    // The scan keeps the area as stated; a plan would enlarge it for its own thresholds.
+    let text = text.replace("[budget]\n", "[budget]\nimpact_radius_m = 550\n");
     let text = text.replace("_showers = 64", &format!("_showers = {showers}"));
     Study::parse(Path::new("pair.toml"), &text).unwrap()
 }

@@ -103,11 +103,12 @@ fn verify_an_interrupted_search_writes_its_best_so_far() {
 #[test]
 fn verify_a_study_takes_its_layouts_from_the_map_of_a_report() {
     let folder = folder("layouts-file");
-    fs::write(folder.join("study.toml"), TINY).unwrap();
-    let start = TINY.find("[[layout]]").unwrap();
-    let end = TINY.find("[pointing]").unwrap();
+    let tiny = TINY.replace("gamma_showers = 64", "gamma_showers = 640");
+    fs::write(folder.join("study.toml"), &tiny).unwrap();
+    let start = tiny.find("[[layout]]").unwrap();
+    let end = tiny.find("[pointing]").unwrap();
     let from = "layouts_file = \"out/layouts.geojson\"\n";
-    let imported = format!("{from}{}{}", &TINY[..start], &TINY[end..]);
+    let imported = format!("{from}{}{}", &tiny[..start], &tiny[end..]);
     fs::write(folder.join("imported.toml"), &imported).unwrap();
     let rates = |study: &str, out: &str| {
         let output = nightpool(&folder, &["plan", study, "--out", out, "--json"]);
