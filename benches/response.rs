@@ -142,6 +142,7 @@ fn simulated(_: &mut Criterion) {
         field_ut,
         columns: (0..400).map(|pad| Column { position_m: place(pad), kind: 0 }).collect(),
         light_scale: 1.0,
+        cascade: None,
         parts: &|primary, light, stream| parts(primary, field_ut, light, &developments, stream),
     };
     let pool = rayon::ThreadPoolBuilder::new().num_threads(1).build().expect("one thread");

@@ -7,11 +7,12 @@ use clap::Args;
 use crate::plan::{PlanError, Tables, plan};
 use crate::report;
 use crate::response::TableError;
-use crate::study::Study;
+use crate::study::{Engine, Study};
 
 use super::failure::Failure;
 use super::interrupt;
 use super::out::print;
+use super::pool::EngineChoice;
 use super::progress::Bar;
 use super::table::ranking_text;
 
@@ -29,6 +30,9 @@ pub struct PlanArguments {
     /// Seed of the random streams, instead of the study's.
     #[arg(long, value_name = "N", value_parser = clap::value_parser!(u64).range(0..=i64::MAX as u64))]
     seed: Option<u64>,
+    /// Light engine, instead of the study's.
+    #[arg(long)]
+    engine: Option<EngineChoice>,
     #[command(flatten)]
     table: TableArguments,
     /// No progress, no table: errors only.
@@ -83,6 +87,11 @@ pub(super) fn run(arguments: &PlanArguments) -> Result<(), Failure> {
     let mut study = Study::read(&arguments.study)?;
     if let Some(seed) = arguments.seed {
         study.seed = seed;
+    }
+    match arguments.engine {
+        Some(EngineChoice::Profile) => study.engine = Engine::Profile,
+        Some(EngineChoice::Cascade) => study.engine = Engine::Cascade,
+        None => {}
     }
     let out = arguments.out.clone().unwrap_or_else(|| PathBuf::from("reports").join(&study.name));
     report::check_destination(&out)?;

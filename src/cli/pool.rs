@@ -24,10 +24,10 @@ const AZIMUTHS: u32 = 12;
 
 /// Which engine makes the light.
 #[derive(Clone, Copy, Debug, PartialEq, Eq, ValueEnum)]
-enum EngineChoice {
+pub(super) enum EngineChoice {
     /// Profiles and tables: microseconds a shower.
     Profile,
-    /// Particle by particle: gamma, electron and positron only.
+    /// Particle by particle: seconds a shower at 1 TeV.
     Cascade,
 }
 

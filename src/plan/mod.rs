@@ -25,9 +25,9 @@ use crate::layout::{Comparison, Resampling, at_least};
 use crate::light::LightModel;
 use crate::rates::{self, Estimate, Spectrum, SpectrumError};
 use crate::report::PlanResult;
-use crate::response::{Column, Sample, Scene, TableError, Throw};
+use crate::response::{CascadeLight, Column, Sample, Scene, TableError, Throw};
 use crate::scan::{Array, ArrayEvents, NotQuiet};
-use crate::study::Study;
+use crate::study::{Engine, Study};
 use crate::telescope::{Accidental, QuietError};
 
 /// A study that cannot be planned.
@@ -36,9 +36,6 @@ pub enum PlanError {
     /// A spectrum that is not known.
     #[error(transparent)]
     Spectrum(#[from] SpectrumError),
-    /// An engine that is not built yet.
-    #[error("engine = \"{0}\" is not available for plan; write \"profile\"")]
-    Engine(&'static str),
     /// A stored response table that cannot be used.
     #[error("{0}; write --rebuild to simulate it again, or another --table")]
     Table(#[from] TableError),
@@ -111,16 +108,13 @@ struct Planned<'a> {
 /// Simulates a study, or reads its stored tables, scores its layouts and ranks them.
 ///
 /// # Errors
-/// [`PlanError`] if the study names a spectrum or an engine that is not there, or a stored table
+/// [`PlanError`] if the study names a spectrum that is not there, or a stored table
 /// cannot be used.
 pub fn plan(
     study: &Study,
     tables: Option<&Tables>,
     progress: &dyn Progress,
 ) -> Result<PlanResult, PlanError> {
-    if study.engine != crate::study::Engine::Profile {
-        return Err(PlanError::Engine(study.engine.name()));
-    }
     let spectra = setup::spectra(study)?;
     progress.stage("light tables", 1);
     let light = setup::light_model(study);
@@ -226,7 +220,18 @@ fn samples(
     progress: &dyn Progress,
 ) -> Result<Vec<Sample>, TableError> {
     let (developments, field_ut) = (setup::developments(), setup::field_ut(study));
+    let through = setup::transmission(study);
+    let through = |emission_m: f64, zenith_rad: f64, wavelength_nm: f64| {
+        through.transmission(emission_m, zenith_rad, wavelength_nm)
+    };
+    let efficiencies = setup::efficiencies(study);
+    let detectors = setup::detectors(study, &efficiencies);
+    let followed = (study.engine == Engine::Cascade).then(|| {
+        let air = (&study.air.atmosphere, study.site.altitude_m);
+        CascadeLight::new(air, &through, field_ut, &study.kinds, &detectors)
+    });
     let scene = Scene {
+        cascade: followed.as_ref(),
         seed: study.seed,
         kinds: &study.kinds,
         sky_per_ns,

@@ -84,6 +84,28 @@ pub fn extinction(study: &Study) -> Extinction {
     }
 }
 
+/// Transmission from anywhere to the site.
+pub fn transmission(study: &Study) -> TransmissionTable {
+    TransmissionTable::new(&extinction(study), &study.air.atmosphere, study.site.altitude_m)
+}
+
+/// Detection efficiency of each kind by wavelength.
+pub fn efficiencies(study: &Study) -> Vec<impl Fn(f64) -> f64 + Sync + '_> {
+    study.kinds.iter().map(|kind| move |nm: f64| kind.efficiency(nm)).collect()
+}
+
+/// The kinds as detectors of light.
+pub fn detectors<'a>(
+    study: &'a Study,
+    efficiencies: &'a [impl Fn(f64) -> f64 + Sync],
+) -> Vec<Detector<'a>> {
+    let mut detectors = Vec::with_capacity(study.kinds.len());
+    for (kind, efficiency) in study.kinds.iter().zip(efficiencies) {
+        detectors.push(Detector { name: &kind.name, band_nm: kind.band_nm(), efficiency });
+    }
+    detectors
+}
+
 /// How electromagnetic showers develop: the table that ships.
 pub fn developments() -> DevelopmentTable {
     DevelopmentTable::shipped().expect("the table that ships is whole")
@@ -93,7 +115,7 @@ pub fn developments() -> DevelopmentTable {
 pub fn light_model(study: &Study) -> LightModel {
     let table = EmitterTable::shipped().expect("the table that ships is whole");
     let (air, altitude_m) = (&study.air.atmosphere, study.site.altitude_m);
-    let through = TransmissionTable::new(&extinction(study), air, altitude_m);
+    let through = transmission(study);
     let settings = LightSettings {
         atmosphere: air,
         transmission: &|emission_m, zenith_rad, wavelength_nm| {
@@ -105,18 +127,8 @@ pub fn light_model(study: &Study) -> LightModel {
         emitters: &table,
         slabs: SLABS,
     };
-    let efficiencies: Vec<_> =
-        study.kinds.iter().map(|kind| move |nm: f64| kind.efficiency(nm)).collect();
-    let mut detectors: Vec<Detector<'_>> = study
-        .kinds
-        .iter()
-        .zip(&efficiencies)
-        .map(|(kind, efficiency)| Detector {
-            name: &kind.name,
-            band_nm: kind.band_nm(),
-            efficiency,
-        })
-        .collect();
+    let efficiencies = efficiencies(study);
+    let mut detectors = detectors(study, &efficiencies);
     detectors.push(Detector { name: "photons", band_nm: POOL_BAND_NM, efficiency: &|_| 1.0 });
     let radius = |kind: &TelescopeKind| (kind.collecting_area_m2() / PI).sqrt();
     let radii = study.kinds.iter().map(radius).chain([POOL_DISC_M]).collect();

@@ -5,6 +5,7 @@
 //! one weight make a word: one primary energy and one ring of impact distance,
 //! [`SHOWERS_PER_WORD`] independent showers at [`CORES_PER_SHOWER`] cores each.
 
+pub mod cascade;
 pub mod error;
 pub mod image;
 pub mod margin;
@@ -16,6 +17,7 @@ pub mod store;
 pub mod table;
 pub mod throw;
 
+pub use cascade::CascadeLight;
 pub use error::TableError;
 pub use image::{CellImage, IMAGE_FLOOR_PE};
 pub use pad::PadKey;

@@ -8,6 +8,7 @@ use crate::shower::{Direction, Primary};
 use crate::telescope::{ImageRecord, Quantum, Readout, TelescopeKind};
 use crate::units::degrees;
 
+use super::cascade::{self, CascadeLight};
 use super::image::CellImage;
 use super::margin::{Code, code};
 use super::pad::PadKey;
@@ -51,6 +52,8 @@ pub struct Scene<'a> {
     pub light_scale: f64,
     /// Makes the electromagnetic parts of a shower.
     pub parts: &'a PartMaker<'a>,
+    /// The reference engine, which then makes all light instead.
+    pub cascade: Option<&'a CascadeLight<'a>>,
 }
 
 /// Makes what gives light in a shower along its axis.
@@ -89,10 +92,21 @@ impl<'a> Scene<'a> {
 
     /// The same scene with other telescopes.
     pub fn with_columns(&self, columns: Vec<Column>) -> Self {
-        let (sky_per_ns, kinds, light, parts) =
-            (self.sky_per_ns.clone(), self.kinds, self.light, self.parts);
-        let Self { seed, pointing, field_ut, light_scale, .. } = *self;
-        Self { seed, kinds, sky_per_ns, light, pointing, field_ut, columns, light_scale, parts }
+        let sky_per_ns = self.sky_per_ns.clone();
+        let Self { seed, kinds, light, pointing, field_ut, light_scale, parts, cascade, .. } =
+            *self;
+        Self {
+            seed,
+            kinds,
+            sky_per_ns,
+            light,
+            pointing,
+            field_ut,
+            columns,
+            light_scale,
+            parts,
+            cascade,
+        }
     }
 
     /// The telescope that a key names, if its kind is here.
@@ -117,6 +131,16 @@ impl<'a> Scene<'a> {
             let cosine = primary.direction.to_source().dot(&towards);
             angle_rad = angle_rad.max(cosine.clamp(-1.0, 1.0).acos());
             let key = [species_key(primary.species), number as u64, place as u64];
+            let mut keep = |at: usize, index: usize, record: Option<ImageRecord>| {
+                let Some(record) = record else { return };
+                let event = place * CORES_PER_SHOWER + at;
+                codes[index * EVENTS_PER_WORD + event] = code(f64::from(record.margin_pe));
+                images[index].extend(CellImage::of(event as u32, &record));
+            };
+            if let Some(engine) = self.cascade {
+                self.followed(engine, (primary, cores), &key, bench, &mut keep);
+                continue;
+            }
             let mut stream = Stream::keyed(self.seed, Stage::Shower, &key);
             let parts = (self.parts)(primary, self.light, &mut stream);
             if parts.is_empty() {
@@ -124,17 +148,47 @@ impl<'a> Scene<'a> {
             }
             let light = ShowerLight::new(self.light, primary.direction, self.field_ut, parts);
             for (at, core) in cores.iter().enumerate() {
-                let event = place * CORES_PER_SHOWER + at;
                 for (index, column) in self.columns.iter().enumerate() {
-                    let record = self.image(&light, core, column, (&key, at), bench);
-                    let Some(record) = record else { continue };
-                    codes[index * EVENTS_PER_WORD + event] = code(f64::from(record.margin_pe));
-                    images[index].extend(CellImage::of(event as u32, &record));
+                    keep(at, index, self.image(&light, core, column, (&key, at), bench));
                 }
             }
         }
         let (energy_gev, exposure, ring) = (thrown.energy_gev, thrown.exposure, thrown.ring);
         WordCells { word: Word { energy_gev, exposure, ring, angle_rad }, codes, images }
+    }
+
+    /// The images of a shower of the reference engine.
+    fn followed(
+        &self,
+        engine: &CascadeLight<'_>,
+        (primary, cores): (&Primary, &[Vector3<f64>]),
+        key: &[u64; 3],
+        bench: &mut Bench<'_>,
+        keep: &mut impl FnMut(usize, usize, Option<ImageRecord>),
+    ) {
+        let discs = cascade::discs(&self.columns, self.kinds, self.light_scale);
+        let seed = (self.seed, key.as_slice());
+        let light = engine.collected(primary, self.pointing, &discs, cores, seed);
+        for (at, core) in cores.iter().enumerate() {
+            for (index, column) in self.columns.iter().enumerate() {
+                if light.quanta(at, index).len() < LEAST_PHOTOELECTRONS as usize {
+                    continue;
+                }
+                let pad = Vector3::from(column.position_m) - core;
+                let axis = primary.direction;
+                cascade::photoelectrons(&light, (at, index), &pad, axis, &mut bench.quanta);
+                let mut stream = self.image_stream(key, at, column);
+                let record = bench.readouts[column.kind].image(&bench.quanta, &mut stream);
+                keep(at, index, record);
+            }
+        }
+    }
+
+    /// The stream of one image: its photoelectrons and its noise.
+    fn image_stream(&self, shower: &[u64; 3], core: usize, column: &Column) -> Stream {
+        let [x, y, z, kind] = PadKey::of(column, self.kinds).stream_words();
+        let key = [shower[0], shower[1], shower[2], core as u64, x, y, z, kind];
+        Stream::keyed(self.seed, Stage::Image, &key)
     }
 
     fn image(
@@ -153,9 +207,7 @@ impl<'a> Scene<'a> {
             return None;
         }
         let weight = (expected / MOST_PHOTOELECTRONS).max(1.0);
-        let [x, y, z, kind] = PadKey::of(column, self.kinds).stream_words();
-        let key = [shower[0], shower[1], shower[2], core_number as u64, x, y, z, kind];
-        let mut stream = Stream::keyed(self.seed, Stage::Image, &key);
+        let mut stream = self.image_stream(shower, core_number, column);
         let (right, up) = self.pointing.transverse();
         let forward = self.pointing.to_source();
         let quanta = &mut bench.quanta;

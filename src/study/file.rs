@@ -106,9 +106,10 @@ fn resolved(
     let name = name(path, &root)?;
     let title = root.text_if_any("title")?.unwrap_or(&name).to_owned();
     let seed = root.count_or("seed", 0, i64::MAX as u64, 1)?;
-    // Plans run on the fast engine; the cascade is reached by `pool` and the examples.
-    root.choice_or("engine", &["profile"], 0)?;
-    let engine = Engine::Profile;
+    let engine = match root.choice_or("engine", &["profile", "cascade"], 0)? {
+        0 => Engine::Profile,
+        _ => Engine::Cascade,
+    };
     let site = ground::site(root.section("site")?, companions)?;
     let air = sky::air(root.section("air")?, companions)?;
     let (night_sky, moonlight) = sky::night_sky(root.section("night_sky")?)?;

@@ -75,6 +75,7 @@ fn on_scene<T>(names: [&str; 2], spots: &[(f64, &str)], with: impl FnOnce(&Scene
         field_ut: Vector3::zeros(),
         columns: columns.collect(),
         light_scale: 1.0,
+        cascade: None,
         parts: &|primary, light, stream| {
             parts(primary, Vector3::zeros(), light, &developments, stream)
         },
