@@ -11,10 +11,11 @@ use nalgebra::Vector3;
 use nightpool::atmosphere::Atmosphere;
 use nightpool::light::Detector;
 use nightpool::light::collect::pool::{incoming, light_cuts};
-use nightpool::light::collect::{CollectSettings, Collector, PadDisc, collected};
+use nightpool::light::collect::shower::Descent;
+use nightpool::light::collect::{Basket, CollectSettings, Collector, PadDisc, collected};
 use nightpool::numerics::{Stage, Stream};
-use nightpool::shower::Direction;
 use nightpool::shower::cascade::{CascadeSpecies, Environment, NoSink, transport};
+use nightpool::shower::{Direction, Primary, Species};
 
 const OBSERVER_M: f64 = 2200.0;
 
@@ -67,6 +68,27 @@ fn cascade(criterion: &mut Criterion) {
             });
         });
     }
+    // Protons, with their hadronic core and muons, at 20 core positions.
+    let cores: Vec<[f64; 2]> = (0..20)
+        .map(|_| [600.0 * (stream.uniform() - 0.5), 600.0 * (stream.uniform() - 0.5)])
+        .collect();
+    let wider = collector.target(&pads, &cores);
+    let descent = Descent::new(&air, &environment, Direction::ZENITH);
+    let (species, energy_gev) = (Species::Proton, 1_000.0);
+    let proton = Primary { species, energy_gev, direction: Direction::ZENITH };
+    group.throughput(Throughput::Elements(1_000));
+    let mut shower = 0;
+    group.bench_function("light of a proton 1000 GeV", |bencher| {
+        bencher.iter(|| {
+            shower += 1;
+            let mut stream = Stream::keyed(1, Stage::Shower, &[shower]);
+            let light = Stream::keyed(1, Stage::Image, &[shower]);
+            let arrival = descent.arrival_ns();
+            let mut basket = Basket::new(&collector, &wider, &environment.air, light, arrival);
+            descent.shower(&proton, &mut stream, &mut basket);
+            black_box(basket.collected())
+        });
+    });
     group.finish();
     let (light, ledger) = {
         let (primary, time) =
