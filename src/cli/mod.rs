@@ -4,7 +4,9 @@
 //! Exit codes: 0 good, 1 the run failed, 2 wrong arguments or input, 130 interrupted (earlier
 //! outputs stay whole; a search writes its best so far).
 
+mod agree;
 mod air;
+mod calibrate;
 mod failure;
 mod interrupt;
 mod out;
@@ -37,6 +39,10 @@ const EXIT_CODES: &str =
 
 #[derive(Debug, Subcommand)]
 enum Command {
+    /// Set the two light engines side by side on one study.
+    Agree(agree::AgreeArguments),
+    /// Make the fast engine's tables with the cascade.
+    Calibrate(calibrate::CalibrateArguments),
     /// Print an atmosphere's state by altitude, or its transmission by wavelength.
     Air(air::AirArguments),
     /// Compare the layouts of a study: simulate, rank, report.
@@ -55,6 +61,8 @@ enum Command {
 /// [`Failure`] with its message and exit code.
 pub fn run(arguments: Arguments) -> Result<(), Failure> {
     match arguments.command {
+        Command::Agree(arguments) => agree::run(&arguments),
+        Command::Calibrate(arguments) => calibrate::run(&arguments),
         Command::Air(arguments) => air::run(&arguments),
         Command::Plan(arguments) => plan::run(&arguments),
         Command::Pool(arguments) => pool::run(&arguments),

@@ -1,5 +1,7 @@
 //! `nightpool pool`: light density against distance from the shower axis.
 
+use std::path::{Path, PathBuf};
+
 use clap::{Args, ValueEnum};
 use nalgebra::Vector3;
 use rayon::prelude::*;
@@ -10,8 +12,11 @@ use crate::light::{
     Detector, LightModel, LightSettings, ShowerLight, View, column::Transmission, parts,
 };
 use crate::numerics::{Stage, Stream};
+use crate::report::charts::{self, PoolPoint};
 use crate::shower::profile::{DevelopmentTable, EmitterTable};
 use crate::shower::{Direction, Primary, Species};
+use crate::study::Study;
+use crate::telescope::TelescopeKind;
 use crate::units;
 
 use super::rows::{Format, written};
@@ -94,9 +99,55 @@ pub struct PoolArguments {
     /// Seed of the random streams.
     #[arg(long, default_value_t = 1)]
     seed: u64,
+    /// Photoelectrons in a telescope instead of photons per m2: STUDY.toml:KIND.
+    #[arg(long, value_name = "STUDY:KIND")]
+    telescope: Option<String>,
     /// How to print.
     #[arg(long, default_value = "table")]
     format: Format,
+    /// Also draw mean and RMS against distance into this SVG file.
+    #[arg(long, value_name = "FILE.svg")]
+    plot: Option<PathBuf>,
+    /// Also draw the footprint on the ground into this SVG file (fast engine).
+    #[arg(long, value_name = "FILE.svg")]
+    map: Option<PathBuf>,
+}
+
+/// What receives the light: photons in a band, or a telescope of a study.
+struct Receiver {
+    kind: Option<TelescopeKind>,
+    band_nm: (f64, f64),
+}
+
+impl Receiver {
+    fn of(arguments: &PoolArguments) -> Result<Self, Failure> {
+        let Some(named) = &arguments.telescope else {
+            return Ok(Self { kind: None, band_nm: arguments.band });
+        };
+        let wrong = |problem: String| Failure::Input(format!("--telescope: {problem}"));
+        let Some((study, name)) = named.rsplit_once(':') else {
+            return Err(wrong("write STUDY.toml:KIND".into()));
+        };
+        let study = Study::read(Path::new(study))?;
+        let names: Vec<&str> = study.kinds.iter().map(|kind| kind.name.as_str()).collect();
+        let known = names.join(", ");
+        let kind = study.kinds.iter().find(|kind| kind.name == name);
+        let kind = kind.ok_or_else(|| wrong(format!("no kind {name}; the study has {known}")))?;
+        Ok(Self { band_nm: kind.band_nm(), kind: Some(kind.clone()) })
+    }
+
+    fn efficiency(&self, nm: f64) -> f64 {
+        self.kind.as_ref().map_or(1.0, |kind| kind.efficiency(nm))
+    }
+
+    /// Collecting area, m2; one for photons.
+    fn area_m2(&self) -> f64 {
+        self.kind.as_ref().map_or(1.0, TelescopeKind::collecting_area_m2)
+    }
+
+    fn unit(&self) -> &'static str {
+        if self.kind.is_some() { "Photoelectrons" } else { "Cherenkov photons per m\u{00b2}" }
+    }
 }
 
 /// Prints the densities.
@@ -109,11 +160,27 @@ pub(super) fn run(arguments: &PoolArguments) -> Result<(), Failure> {
         Switch::On => table.transmission(emission, zenith, nm),
         Switch::Off => 1.0,
     };
-    let rows = match arguments.engine {
-        EngineChoice::Profile => profile(arguments, &air, &through),
-        EngineChoice::Cascade => cascade(arguments, &air, &through),
+    let receiver = Receiver::of(arguments)?;
+    let mut rows = match arguments.engine {
+        EngineChoice::Profile => profile(arguments, &receiver, &air, &through),
+        EngineChoice::Cascade => cascade(arguments, &receiver, &air, &through),
     };
-    print(&text(arguments, &rows))
+    rows.iter_mut().flatten().for_each(|value| *value *= receiver.area_m2());
+    if let Some(path) = &arguments.plot {
+        let points: Vec<PoolPoint> =
+            arguments.distance.iter().zip(&rows).map(|(r, [a, b, c])| [*r, *a, *b, *c]).collect();
+        let name = format!("{} {} GeV", arguments.primary, arguments.energy);
+        draw(path, charts::pool_chart(&name, receiver.unit(), &points))?;
+    }
+    if let Some(path) = &arguments.map {
+        draw(path, footprint(arguments, &receiver, &air, &through))?;
+    }
+    print(&text(arguments, &receiver, &rows))
+}
+
+fn draw(path: &Path, svg: String) -> Result<(), Failure> {
+    std::fs::write(path, svg)
+        .map_err(|error| Failure::Input(format!("{}: cannot be written: {error}", path.display())))
 }
 
 fn check(arguments: &PoolArguments) -> Result<(), Failure> {
@@ -130,6 +197,9 @@ fn check(arguments: &PoolArguments) -> Result<(), Failure> {
     if arguments.distance.iter().any(|distance| !(0.0..=1_500.0).contains(distance)) {
         return wrong("--distance must lie between 0 and 1500 m");
     }
+    if arguments.map.is_some() && arguments.engine == EngineChoice::Cascade {
+        return wrong("--map is drawn by the fast engine: leave --engine cascade out");
+    }
     if arguments.band.0 < 250.0 || arguments.band.1 > 900.0 {
         return wrong("--band must lie between 250 and 900 nm");
     }
@@ -143,6 +213,7 @@ fn primary(arguments: &PoolArguments) -> Primary {
 
 fn cascade(
     arguments: &PoolArguments,
+    receiver: &Receiver,
     air: &Atmosphere,
     through: &Transmission<'_>,
 ) -> Vec<[f64; 3]> {
@@ -152,7 +223,11 @@ fn cascade(
         transmission: through,
         observer_altitude_m: arguments.observer,
         field_ut: Vector3::from(arguments.field),
-        detector: Detector { name: "photons", band_nm: arguments.band, efficiency: &|_| 1.0 },
+        detector: Detector {
+            name: "receiver",
+            band_nm: receiver.band_nm,
+            efficiency: &|nm| receiver.efficiency(nm),
+        },
         distances_m: &arguments.distance,
         bearing_rad: arguments.bearing,
         showers: arguments.showers,
@@ -161,16 +236,16 @@ fn cascade(
     pool_density(&request).summary()
 }
 
-/// Mean, error of the mean and RMS between showers at each distance, by the fast engine.
-fn profile(
+/// The fast engine's light tables.
+fn model(
     arguments: &PoolArguments,
+    receiver: &Receiver,
     air: &Atmosphere,
     through: &Transmission<'_>,
-) -> Vec<[f64; 3]> {
+) -> LightModel {
     let primary = primary(arguments);
     let field = Vector3::from(arguments.field);
     let emitters = EmitterTable::shipped().expect("the table that ships is whole");
-    let developments = DevelopmentTable::shipped().expect("the table that ships is whole");
     let settings = LightSettings {
         atmosphere: air,
         transmission: through,
@@ -180,8 +255,61 @@ fn profile(
         emitters: &emitters,
         slabs: SLABS,
     };
-    let detector = Detector { name: "photons", band_nm: arguments.band, efficiency: &|_| 1.0 };
-    let model = LightModel::new(&settings, &[detector]);
+    let efficiency = |nm: f64| receiver.efficiency(nm);
+    let detector =
+        Detector { name: "receiver", band_nm: receiver.band_nm, efficiency: &efficiency };
+    let radius_m = (receiver.area_m2() / core::f64::consts::PI).sqrt();
+    LightModel::new(&settings, &[detector]).with_disc_radii_m(vec![radius_m])
+}
+
+/// Cells of a side of the footprint, and half its width, m.
+const MAP_CELLS: usize = 60;
+const MAP_HALF_M: f64 = 300.0;
+
+/// The mean footprint on the ground.
+fn footprint(
+    arguments: &PoolArguments,
+    receiver: &Receiver,
+    air: &Atmosphere,
+    through: &Transmission<'_>,
+) -> String {
+    let (primary, field) = (primary(arguments), Vector3::from(arguments.field));
+    let developments = DevelopmentTable::shipped().expect("the table that ships is whole");
+    let model = model(arguments, receiver, air, through);
+    let step = 2.0 * MAP_HALF_M / MAP_CELLS as f64;
+    let middle = |place: usize| (place as f64 + 0.5) * step - MAP_HALF_M;
+    let showers: Vec<Vec<f64>> = (0..arguments.showers)
+        .into_par_iter()
+        .map(|shower| {
+            let mut stream = Stream::keyed(arguments.seed, Stage::Shower, &[shower]);
+            let made = parts(&primary, field, &model, &developments, &mut stream);
+            let light = ShowerLight::new(&model, primary.direction, field, made);
+            let mut view = View::default();
+            let cells = 0..MAP_CELLS * MAP_CELLS;
+            let value = |cell: usize| {
+                let (east, north) = (middle(cell % MAP_CELLS), middle(cell / MAP_CELLS));
+                light.view(0, &Vector3::new(east, north, 0.0), &mut view);
+                view.density_m2 * receiver.area_m2()
+            };
+            cells.map(value).collect()
+        })
+        .collect();
+    let mean = |cell: usize| showers.iter().map(|s| s[cell]).sum::<f64>() / showers.len() as f64;
+    let values: Vec<f64> = (0..MAP_CELLS * MAP_CELLS).map(mean).collect();
+    charts::footprint_chart(MAP_HALF_M, MAP_CELLS, &values, receiver.unit())
+}
+
+/// Mean, error of the mean and RMS between showers at each distance, by the fast engine.
+fn profile(
+    arguments: &PoolArguments,
+    receiver: &Receiver,
+    air: &Atmosphere,
+    through: &Transmission<'_>,
+) -> Vec<[f64; 3]> {
+    let primary = primary(arguments);
+    let field = Vector3::from(arguments.field);
+    let developments = DevelopmentTable::shipped().expect("the table that ships is whole");
+    let model = model(arguments, receiver, air, through);
     let bearings: Vec<f64> = match arguments.bearing {
         Some(bearing) => vec![bearing],
         None => (0..AZIMUTHS)
@@ -220,10 +348,13 @@ fn profile(
 }
 
 const COLUMNS: [&str; 4] = ["distance_m", "density_m2", "density_error_m2", "density_rms_m2"];
+const TELESCOPE_COLUMNS: [&str; 4] =
+    ["distance_m", "photoelectrons", "photoelectrons_error", "photoelectrons_rms"];
 
-fn text(arguments: &PoolArguments, rows: &[[f64; 3]]) -> String {
+fn text(arguments: &PoolArguments, receiver: &Receiver, rows: &[[f64; 3]]) -> String {
+    let columns = if receiver.kind.is_some() { TELESCOPE_COLUMNS } else { COLUMNS };
     let rows = arguments.distance.iter().zip(rows);
     let rows: Vec<Vec<f64>> =
         rows.map(|(distance, [mean, error, rms])| vec![*distance, *mean, *error, *rms]).collect();
-    written(arguments.format, &COLUMNS, &rows)
+    written(arguments.format, &columns, &rows)
 }

@@ -1,5 +1,6 @@
 //! From a study to its result: simulate once, score every layout on the same events.
 
+mod agree;
 mod finalists;
 mod levels;
 mod models;
@@ -13,6 +14,7 @@ mod setup;
 mod sources;
 mod tables;
 
+pub use agree::{AgreeRow, agree};
 pub use scan::{ScanError, ScanRequest, scan};
 pub use search::{Best, SearchError, Wanted, best_files, search_ground};
 pub use tables::Tables;

@@ -4,6 +4,7 @@ mod air_profiles;
 mod atmosphere;
 mod cascade;
 mod command;
+mod engines;
 mod hadronic;
 mod layout;
 mod light;

@@ -20,7 +20,7 @@ pub use air::{AirCurve, air_chart};
 pub use curves::{differential_rate_chart, effective_area_chart};
 pub use map::layout_map_chart;
 pub use order::ranking_chart;
-pub use pool::light_pool_chart;
+pub use pool::{PoolPoint, footprint_chart, light_pool_chart, pool_chart};
 pub use scan::scan_chart;
 pub use site::site_map_chart;
 pub use thresholds::threshold_chart;
