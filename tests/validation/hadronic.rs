@@ -246,7 +246,7 @@ fn compare(edges: [f64; 5], showers: u64, published: &dyn Fn(f64) -> f64) {
 
 /// Depth of maximum of protons, mean 370, 450, 530 g/cm2 at 1, 10, 100 TeV within 20 g/cm2 and 2
 /// standard errors, elongation 70 to 80 g/cm2 a decade within 10; RMS 90 to 100 g/cm2 within 20 (from
-/// memory, "at TeV energies"): ours is 95 at 100 TeV, but 120 at 1 TeV, of which 85 is the first
+/// memory, "at TeV energies"): ours is 92 at 100 TeV, but 121 at 1 TeV, of which 85 is the first
 /// interaction's depth alone, so it is held to at the highest energy only.
 #[test]
 fn validate_proton_depth_of_maximum() {

@@ -92,12 +92,12 @@ fn rebinned(profile: &[f64], start: f64, bin: usize) -> f64 {
     let (low, high) = (start + edge_g_cm2(bin), start + edge_g_cm2(bin + 1));
     let (first, last) = ((low / BIN_G_CM2) as usize, (high / BIN_G_CM2) as usize);
     let mut track = 0.0;
-    for index in first..=last.min(profile.len() - 1) {
+    for (index, size) in profile.iter().enumerate().take(last + 1).skip(first) {
         let top = (index as f64 * BIN_G_CM2).max(start);
         let bottom = (index + 1) as f64 * BIN_G_CM2;
         let inside = high.min(bottom) - low.max(top);
         if inside > 0.0 && bottom > top {
-            track += profile[index] * BIN_G_CM2 * inside / (bottom - top);
+            track += size * BIN_G_CM2 * inside / (bottom - top);
         }
     }
     track / (high - low)
