@@ -4,6 +4,7 @@ mod air_profiles;
 mod atmosphere;
 mod cascade;
 mod command;
+mod engine_commands;
 mod engines;
 mod hadronic;
 mod layout;
